@@ -1,0 +1,1 @@
+"""What follows from brief and knowledge: sizing, screening, criteria, shortlist."""

@@ -1,0 +1,112 @@
+"""Everything that judging one candidate of a brief needs, gathered once."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from formbuf.advice.criteria_table import Settings, settings_for
+from formbuf.advice.loads import LoadBudget, load_budget
+from formbuf.advice.sizing import sizing_background
+from formbuf.chemistry.osmolality import OsmoticLaw
+from formbuf.library import Library
+from formbuf.library.records import System
+from formbuf.library.rule_tables import Rulebook
+from formbuf.library.rules import load_rulebook
+from formbuf.product.background import background_of, drug_capacity_mmol_l_ph
+from formbuf.product.brief import Completed
+from formbuf.product.fact_values import Situation
+from formbuf.product.facts import FactSheet, prepare, product_facts
+from formbuf.product.osmotics import osmotic_law
+from formbuf.product.product_brief import ProductBrief
+from formbuf.product.recipe import Background
+
+
+@dataclass(frozen=True)
+class Case:
+    """A brief with what follows from it for every candidate.
+
+    Attributes
+    ----------
+    library : Library
+    brief : ProductBrief
+    settings : Settings
+    loads : LoadBudget
+    law : OsmoticLaw
+    background : Background
+        Excipients, drug and tonicity agent.
+    sizing_background : Background
+        The same with the agent fixed.
+    rulebook : Rulebook
+    situation : Situation
+    facts : FactSheet
+        Facts of the product that rules and limits test.
+    """
+
+    library: Library
+    brief: ProductBrief
+    settings: Settings
+    loads: LoadBudget
+    law: OsmoticLaw
+    background: Background
+    sizing_background: Background
+    rulebook: Rulebook
+    situation: Situation
+    facts: FactSheet
+
+
+def case_for(completed: Completed) -> Case:
+    """Gather the case of a completed brief."""
+    library, brief = completed.library, completed.brief
+    law = osmotic_law(library)
+    background = background_of(library, brief)
+    book = load_rulebook(library)
+    assumed = {entry.key for entry in completed.assumptions}
+    situation = prepare(
+        brief,
+        library,
+        book,
+        assumed=assumed,
+        drug_capacity_mmol_l_ph=drug_capacity_mmol_l_ph(library, brief),
+    )
+    return Case(
+        library,
+        brief,
+        settings_for(library, brief),
+        load_budget(library, brief),
+        law,
+        background,
+        sizing_background(background, library, law),
+        book,
+        situation,
+        product_facts(situation),
+    )
+
+
+def considered_systems(case: Case) -> list[System]:
+    """Systems to judge: buffers, roles asked for, and what the brief requires.
+
+    The mixture of two species that each are systems of their own (citrate with
+    phosphate) is left out unless required; ``shortlist`` adds it where neither
+    species alone carries the loads.
+    """
+    roles = {"buffer", *case.brief.consider_roles}
+    wanted = set(case.brief.require)
+    own = {c.system for c in case.brief.candidate if c.system}
+    found = []
+    for system in case.library.systems.values():
+        required = system.id in wanted or bool(wanted & set(system.species))
+        if system.role == "none" or is_mixture(case.library, system):
+            if system.id in wanted:
+                found.append(system)
+            continue
+        if system.role in roles or required or system.overlay:
+            found.append(system)
+    return [s for s in found if s.id != "none" or s.id in own]
+
+
+def is_mixture(library: Library, system: System) -> bool:
+    """Whether a system shares its total between two species that buffer alone too."""
+    if len(system.species) != 2 or system.acid_material is None:
+        return False
+    acid = library.find_material(system.acid_material)
+    return system.species[0] in acid.contents

@@ -1,0 +1,155 @@
+"""What will attack the pH over shelf life: the load budget."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from formbuf.chemistry import gas
+from formbuf.library import Library
+from formbuf.library.records import Basis
+from formbuf.product.composition import ladder_of
+from formbuf.product.product_brief import ProductBrief
+
+
+@dataclass(frozen=True, slots=True)
+class LoadItem:
+    """One acid or base load.
+
+    Attributes
+    ----------
+    name : str
+    acid_mmol_l, base_mmol_l : float
+        Strong acid and base it amounts to [mmol/L over shelf life].
+    basis : Basis
+    source : str
+        Id of a source, empty where the basis allows none.
+    reason : str
+    is_default : bool
+        Whether nobody stated it.
+    """
+
+    name: str
+    acid_mmol_l: float
+    base_mmol_l: float
+    basis: Basis
+    source: str
+    reason: str
+    is_default: bool
+
+
+@dataclass(frozen=True, slots=True)
+class LoadBudget:
+    """All loads of a product.
+
+    Attributes
+    ----------
+    items : tuple of LoadItem
+    """
+
+    items: tuple[LoadItem, ...]
+
+    @property
+    def acid_mmol_l(self) -> float:
+        """Total acid [mmol/L]."""
+        return sum(item.acid_mmol_l for item in self.items)
+
+    @property
+    def base_mmol_l(self) -> float:
+        """Total base [mmol/L]."""
+        return sum(item.base_mmol_l for item in self.items)
+
+    @property
+    def all_default(self) -> bool:
+        """Whether no load was stated by the user."""
+        return all(item.is_default for item in self.items)
+
+
+def load_budget(library: Library, brief: ProductBrief) -> LoadBudget:
+    """Collect the loads of a product: stated or default, glass alkali, carbon dioxide.
+
+    Parameters
+    ----------
+    library : Library
+    brief : ProductBrief
+
+    Returns
+    -------
+    LoadBudget
+    """
+    loads = brief.loads
+    reason = loads.note or "stated in the brief"
+    default = "default allowance: nobody has stated the loads of this product"
+    items = [
+        LoadItem(
+            "acid over shelf life",
+            loads.acid_mmol_l,
+            0.0,
+            "judgement",
+            "",
+            default if loads.acid_is_default else reason,
+            loads.acid_is_default,
+        ),
+        LoadItem(
+            "base over shelf life",
+            0.0,
+            loads.base_mmol_l,
+            "judgement",
+            "",
+            default if loads.base_is_default else reason,
+            loads.base_is_default,
+        ),
+    ]
+    if brief.container.is_glass and brief.container.count_alkali:
+        items.append(_glass(library, brief.container.fill_volume_ml))
+    open_to_gas = brief.carbon_dioxide.exposure == "open"
+    if open_to_gas or brief.container.gas_permeable:
+        items.append(_carbon_dioxide(library, brief))
+    return LoadBudget(tuple(items))
+
+
+def _glass(library: Library, fill_volume_ml: float) -> LoadItem:
+    for row in library.glass_alkali:
+        upper = row.fill_volume_to_ml
+        if row.fill_volume_above_ml < fill_volume_ml and (
+            upper is None or fill_volume_ml <= upper
+        ):
+            q = row.alkali_mmol_l
+            return LoadItem(
+                "alkali from glass",
+                0.0,
+                q.value,
+                q.basis,
+                q.source,
+                f"type I limit of the surface test at {fill_volume_ml:g} mL fill; "
+                "an upper screening bound",
+                True,
+            )
+    q = library.glass_alkali[0].alkali_mmol_l
+    return LoadItem(
+        "alkali from glass",
+        0.0,
+        q.value,
+        q.basis,
+        q.source,
+        "type I limit of the surface test at the smallest fill",
+        True,
+    )
+
+
+def _carbon_dioxide(library: Library, brief: ProductBrief) -> LoadItem:
+    """Acid that dissolved carbon dioxide amounts to at the target pH."""
+    ladder = ladder_of(library.species["carbonate"])
+    temperature_c = brief.ph.measure_temperature_c
+    taken = gas.absorbed_acid_mol_kg(
+        ladder, brief.carbon_dioxide.pressure_pa, brief.ph.target, temperature_c
+    )
+    return LoadItem(
+        "carbon dioxide taken up",
+        1000.0 * float(taken),
+        0.0,
+        "derived",
+        "sander_2023",
+        f"in equilibrium with {brief.carbon_dioxide.pressure_pa:.0f} Pa of carbon "
+        f"dioxide at pH {brief.ph.target:.2f} and {temperature_c:g} C",
+        False,
+    )

@@ -1,0 +1,220 @@
+"""The product without an added buffer: always judged, rarely by itself enough.
+
+Only what is known of the drug decides: a measured titration, or its pK values and
+concentration. A protein without either cannot be judged.
+"""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+
+from formbuf.advice import precedent
+from formbuf.advice.case import Case
+from formbuf.advice.compatibility import exposures_of, findings_of, quantities_of
+from formbuf.advice.evaluate import evaluate
+from formbuf.advice.measure import judge_criteria
+from formbuf.advice.results import Candidate, CriterionResult, Standing
+from formbuf.advice.sizing import Sizing, windows_of
+from formbuf.chemistry.titration import STRONG_ACID, STRONG_BASE
+from formbuf.errors import InputError
+from formbuf.library.records import System
+from formbuf.product.composition import Mixture
+from formbuf.product.recipe import make
+
+#: A strong acid or base alone makes the product; as a system without species.
+SYSTEM_ID = "none"
+
+
+def judge_none(case: Case) -> Candidate:
+    """Judge the product without buffer, set to its pH with strong acid or base."""
+    system = case.library.systems[SYSTEM_ID]
+    carried, how = _carried(case)
+    standing, note = _standing(case, carried, how)
+    candidate = _made(case, system, carried)
+    return replace(
+        candidate,
+        standing=standing,
+        carried_share=carried if carried is not None and np.isfinite(carried) else None,
+        notes=(note, *candidate.notes),
+    )
+
+
+def _carried(case: Case) -> tuple[float | None, str]:
+    """Share of the loads that the product carries by itself, and how that is known."""
+    loads, windows = case.loads, windows_of(case.brief)
+    low, high = case.brief.ph.low, case.brief.ph.high
+    readings = case.brief.drug.titration
+    if readings:
+        ph = [r.ph for r in readings]
+        base = [r.base_mmol_l for r in readings]
+        if not ph[0] <= low or not ph[-1] >= high:
+            return None, "titration does not span the window"
+        at = np.interp([low, windows.start_low, windows.start_high, high], ph, base)
+        acid, alkali = float(at[1] - at[0]), float(at[3] - at[2])
+        return _least(acid, alkali, case), "titration"
+    drug = case.brief.drug
+    known_from = drug.charge_known_from
+    per_gram = [r.ph for r in drug.titration_mmol_g]
+    if known_from == "titration" and not (per_gram[0] <= low <= high <= per_gram[-1]):
+        return None, "titration does not span the window"
+    if known_from is not None:
+        acid, alkali = _drug_capacity(case)
+        return _least(acid, alkali, case), known_from
+    if loads.acid_mmol_l <= 0.0 and loads.base_mmol_l <= 0.0:
+        return float("inf"), "no load"
+    return None, "protein" if drug.is_biologic else "unknown"
+
+
+def _least(acid_mmol_l: float, base_mmol_l: float, case: Case) -> float:
+    loads = case.loads
+    shares = [
+        carried / load
+        for carried, load in (
+            (acid_mmol_l, loads.acid_mmol_l),
+            (base_mmol_l, loads.base_mmol_l),
+        )
+        if load > 0.0
+    ]
+    return min(shares, default=float("inf"))
+
+
+def _drug_capacity(case: Case) -> tuple[float, float]:
+    """Acid and base [mmol/L] that drug, excipients and water take up in the window."""
+    windows = windows_of(case.brief)
+    t = windows.measure_c
+    mixed = _bare_mixture(case, windows.start_low)
+    acid = mixed.titrate(t, case.brief.ph.low, STRONG_ACID).amount_mol_kg
+    other = _bare_mixture(case, windows.start_high)
+    base = other.titrate(t, case.brief.ph.high, STRONG_BASE).amount_mol_kg
+    return (
+        1000.0 * float(acid) * float(mixed.water_kg_l),
+        1000.0 * float(base) * float(other.water_kg_l),
+    )
+
+
+def _bare_mixture(case: Case, ph: float) -> Mixture:
+    system = case.library.systems[SYSTEM_ID]
+    return make(
+        case.library,
+        system,
+        1.0,
+        ph,
+        case.brief.ph.measure_temperature_c,
+        case.background,
+        case.law,
+    ).mixture
+
+
+def _standing(case: Case, carried: float | None, how: str) -> tuple[Standing, str]:
+    if how == "protein":
+        return "not evaluable", (
+            "what the protein itself buffers is unknown: a measured titration of the "
+            "product without buffer would decide, its sequence or charge would help"
+        )
+    if carried is None:
+        if how == "titration does not span the window":
+            return "not evaluable", "the measured titration does not span the window"
+        return "viable", (
+            "the drug's pK values or a titration are not given: whether the product "
+            "holds its pH without a buffer is open"
+        )
+    basis = {
+        "titration": "by its measured titration",
+        "pka": "by the drug's pK values",
+        "residues": "by its residues taken as independent, which overstates it",
+        "net_charge": "by its isoelectric point and charge, a straight line",
+        "no load": "since no load is expected",
+    }[how]
+    shown = "all" if carried >= 1.0 else f"{100.0 * carried:.0f} %"
+    note = f"without a buffer the product carries {shown} of the loads, {basis}"
+    if carried < 1.0:
+        return "viable", f"{note}: not enough by itself"
+    return ("lead" if how == "titration" else "back-up"), note
+
+
+def _made(case: Case, system: System, carried: float | None) -> Candidate:
+    library, brief = case.library, case.brief
+    empty = Candidate(
+        key=SYSTEM_ID,
+        system=system,
+        name=system.name,
+        is_own_formula=False,
+        is_mixture=False,
+        variant_of=None,
+        required_mmol_l=0.0,
+        limiting_load="none",
+        carried_share=None,
+        concentration_mmol_l=0.0,
+        ceiling_mmol_l=None,
+        composition=(),
+        tonicity_fill=None,
+        states=(),
+        species_states=(),
+        ph_drift=None,
+        osmolality_mosm_kg=None,
+        buffer_osmolality_mosm_kg=0.0,
+        titratable_acidity_mmol_l=None,
+        exposures=(),
+        criteria={},
+        screens=(),
+    )
+    try:
+        recipe = make(
+            library,
+            system,
+            1.0,
+            brief.ph.target,
+            brief.ph.measure_temperature_c,
+            case.background,
+            case.law,
+        )
+    except InputError:
+        return empty
+    buffer = {k: float(v) for k, v in recipe.buffer_mmol_l.items() if float(v) > 0.0}
+    product = evaluate(
+        library,
+        brief,
+        buffer,
+        float(recipe.fill_mmol_l),
+        recipe.mixture,
+        (),
+        case.background.agent,
+        case.law,
+    )
+    known = carried is not None
+    judged: dict[str, CriterionResult] = {}
+    if known:
+        found = precedent.standings(
+            library, brief, replace(system, species=("none",)), {"none": 1.0}
+        )
+        sizing = Sizing(
+            0.0 if carried is not None and carried >= 1.0 else None,
+            "none",
+            brief.ph.measure_temperature_c,
+            np.array([carried or 0.0]),
+            np.array([1.0]),
+        )
+        ceiling = 50.0
+        judged = dict(
+            judge_criteria(case, system, product, sizing, found, ceiling, 0.0)
+        )
+    storage = [s for s in product.states if "storage" in s.kinds]
+    reference = next(s.ph for s in product.states if "measure" in s.kinds)
+    drift = max((s.ph - reference for s in storage), key=abs, default=None)
+    numbers = quantities_of(case, system, product, None)
+    has_drug = bool(recipe.mixture.ladders)
+    return replace(
+        empty,
+        composition=product.composition,
+        tonicity_fill=product.tonicity_fill,
+        states=product.states if has_drug else (),
+        species_states=product.species_states,
+        ph_drift=drift if has_drug else None,
+        osmolality_mosm_kg=product.osmolality_mosm_kg,
+        exposures=exposures_of(case, numbers),
+        findings=findings_of(case, numbers),
+        criteria=judged,
+        mixture=product.mixture,
+    )

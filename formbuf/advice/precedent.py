@@ -1,0 +1,190 @@
+"""Where and for what a species is known, and up to which concentration."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+from formbuf.advice.criteria_table import Settings
+from formbuf.library import Library
+from formbuf.library.records import KindPrecedent, Precedent, System
+from formbuf.product.product_brief import ProductBrief
+
+#: Route groups on which potassium as the ion of the buffer counts as limited.
+POTASSIUM_LIMITED = ("parenteral", "ophthalmic_topical")
+
+
+@dataclass(frozen=True, slots=True)
+class SpeciesStanding:
+    """Precedent of one species of a candidate.
+
+    Attributes
+    ----------
+    species : str
+    share : float
+        Its amount over the nominal concentration of the system.
+    row : Precedent or None
+    kind_row : KindPrecedent or None
+    """
+
+    species: str
+    share: float
+    row: Precedent | None
+    kind_row: KindPrecedent | None
+
+
+def standings(
+    library: Library,
+    brief: ProductBrief,
+    system: System,
+    shares: Mapping[str, float],
+) -> tuple[SpeciesStanding, ...]:
+    """Look up every species of a system on the route and for the kind of product."""
+    route = brief.product.precedent_route
+    return tuple(
+        SpeciesStanding(
+            species,
+            shares.get(species, 1.0),
+            library.precedents.get((species, route)),
+            kind_row(library, brief, species),
+        )
+        for species in system.species
+    )
+
+
+def kind_row(
+    library: Library, brief: ProductBrief, species: str
+) -> KindPrecedent | None:
+    """Row of the kind table for a species; rows for any kind serve all kinds."""
+    group, kind = brief.route_group, brief.drug.kind_group
+    for row in library.kind_precedents:
+        if (
+            row.species == species
+            and row.route_group == group
+            and row.kind in (kind, "any")
+        ):
+            return row
+    return None
+
+
+def kind_applies(library: Library, brief: ProductBrief) -> bool:
+    """Whether the kind table says anything about this kind of product and route."""
+    group, kind = brief.route_group, brief.drug.kind_group
+    return any(
+        row.route_group == group and row.kind in (kind, "any")
+        for row in library.kind_precedents
+    )
+
+
+def ceiling_mmol_l(
+    found: tuple[SpeciesStanding, ...], brief: ProductBrief, settings: Settings
+) -> float:
+    """Largest nominal concentration that every species of the system bears.
+
+    Each species is held against its own ceiling. Above the reference volume the
+    ceiling holds as an amount per dose.
+    """
+    fallback = float(settings.table["anchors"]["capacity"]["fallback_ceiling"])
+    ceilings = [
+        (
+            fallback
+            if s.row is None or s.row.ceiling_mmol_l is None
+            else s.row.ceiling_mmol_l
+        )
+        / s.share
+        for s in found
+        if s.share > 1e-9
+    ]
+    ceiling = min(ceilings, default=fallback)
+    reference = settings.number("sizing", "dose_reference_ml")
+    if brief.is_parenteral and brief.dose.volume_ml > reference:
+        ceiling *= reference / brief.dose.volume_ml
+    return ceiling
+
+
+@dataclass(frozen=True, slots=True)
+class PrecedentScore:
+    """Desirability of precedent and how it came about."""
+
+    desirability: float
+    text: str
+    sources: tuple[str, ...]
+    rests_on_recall: bool
+
+
+def score(
+    library: Library,
+    brief: ProductBrief,
+    system: System,
+    found: tuple[SpeciesStanding, ...],
+    concentration_mmol_l: float,
+    settings: Settings,
+) -> PrecedentScore:
+    """Judge precedent: the lower of route and kind, times closeness to usual use.
+
+    Using less than usual is never a fault. With two species the worse one counts.
+    """
+    table = settings.table["precedent"]
+    judged = [
+        _species_score(library, brief, system, s, concentration_mmol_l, table)
+        for s in found
+    ]
+    return min(judged, key=lambda entry: entry.desirability)
+
+
+def _species_score(
+    library: Library,
+    brief: ProductBrief,
+    system: System,
+    s: SpeciesStanding,
+    concentration_mmol_l: float,
+    table: Mapping[str, float],
+) -> PrecedentScore:
+    level = s.row.level if s.row is not None else "none"
+    level_value = float(table.get(level, table["none"]))
+    words = [f"{s.species}: {level} on this route"]
+    if has_potassium(library, system) and brief.route_group in POTASSIUM_LIMITED:
+        limited = float(table["limited"])
+        if limited < level_value:
+            level_value = limited
+            words.append("potassium as the ion of the buffer counts as limited")
+    if kind_applies(library, brief):
+        kind = s.kind_row.level if s.kind_row is not None else "none"
+        kind_value = float(table[f"kind_{kind}"])
+        words.append(f"{kind} for this kind of product")
+    else:
+        kind_value = 1.0
+    closeness = 1.0
+    usual = s.row.usual_high_mmol_l if s.row is not None else None
+    own = concentration_mmol_l * s.share
+    if usual is not None and own > usual:
+        closeness = (usual / own) ** float(table["above_usual_exponent"])
+        words.append(f"{own:.3g} mmol/L is above the usual {usual:g}")
+    elif usual is not None:
+        words.append(f"{own:.3g} mmol/L is within usual use (up to {usual:g})")
+    sources = tuple(x for x in (s.row.source if s.row else "", _kind_source(s)) if x)
+    recall = s.row is None or s.row.level_basis != "published" or bool(s.kind_row)
+    return PrecedentScore(
+        max(min(level_value, kind_value) * closeness, 0.05),
+        "; ".join(words),
+        sources,
+        recall,
+    )
+
+
+def _kind_source(s: SpeciesStanding) -> str:
+    return s.kind_row.source if s.kind_row is not None else ""
+
+
+def has_potassium(library: Library, system: System) -> bool:
+    """Whether potassium is the counter-ion of a system's materials."""
+    materials = [m for m in (system.acid_material, system.base_material) if m]
+    return any("potassium" in library.find_material(m).contents for m in materials)
+
+
+def has_monograph(row: Precedent | None, wanted: tuple[str, ...] = ()) -> bool:
+    """Whether a pharmacopoeia (one of the wanted, or any) holds the species."""
+    if row is None:
+        return False
+    books = wanted or tuple(row.monographs)
+    return any(row.monographs.get(book) in ("yes", "partial") for book in books)

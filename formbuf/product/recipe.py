@@ -1,0 +1,362 @@
+"""How a buffer system is made to a pH: which materials, how much of each.
+
+A system is started from its acid form and exchanged towards its base form until
+the charge balance closes at the wanted pH. Beyond either form a titrant goes on
+(hydrochloric acid, or the hydroxide of the system). Systems of two species, such as
+histidine with acetic acid, are the same problem with a titrant that buffers. The
+tonicity agent fills what room is left; since a salt changes the ionic strength, the
+two are settled together.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field, replace
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from formbuf.chemistry.osmolality import OsmoticLaw
+from formbuf.chemistry.titration import Titrant
+from formbuf.errors import InputError
+from formbuf.library import Library
+from formbuf.library.records import Material, System
+from formbuf.product.composition import Extra, Mixture, ladder_of, mixture
+
+Array = NDArray[np.float64]
+
+FILL_CAP = 12
+FILL_TOLERANCE_MOSM_KG = 0.05
+
+
+@dataclass(frozen=True)
+class Background:
+    """Everything in the product that is not the buffer.
+
+    Attributes
+    ----------
+    materials_mmol_l : mapping of str to float
+        Excipients [mmol/L].
+    extras : tuple of Extra
+        The drug.
+    agent : str or None
+        Material that fills the room to the osmolality target.
+    target_mosm_kg : float or None
+        Osmolality to fill up to; None for no filling.
+    volume_temperature_c : float
+        Temperature at which volumes are measured [C].
+    """
+
+    materials_mmol_l: Mapping[str, float] = field(default_factory=dict)
+    extras: tuple[Extra, ...] = ()
+    agent: str | None = None
+    target_mosm_kg: float | None = None
+    volume_temperature_c: float = 25.0
+
+
+@dataclass(frozen=True)
+class Recipe:
+    """A system made to a pH at one or many concentrations.
+
+    Attributes
+    ----------
+    system : str
+    concentration_mmol_l : ndarray, shape (...)
+        Total of the buffering species (of the first one where a second is titrant).
+    buffer_mmol_l : mapping of str to ndarray
+        Materials of the buffer itself, titrant included [mmol/L].
+    fill_mmol_l : ndarray, shape (...)
+        Tonicity agent added [mmol/L].
+    mixture : Mixture
+        The whole product.
+    target_ph : ndarray, shape (...)
+    """
+
+    system: str
+    concentration_mmol_l: Array
+    buffer_mmol_l: Mapping[str, Array]
+    fill_mmol_l: Array
+    mixture: Mixture
+    target_ph: Array
+
+
+@dataclass(frozen=True, slots=True)
+class Piece:
+    """One stretch of the way to a pH: where it starts and what is added.
+
+    ``start`` and ``added`` map materials to moles per mole of buffering species and
+    per mole of titration; ``limit`` is the amount per mole of species at which the
+    stretch ends.
+    """
+
+    start: Mapping[str, float]
+    added: Mapping[str, float]
+    limit: float
+
+
+def pieces(library: Library, system: System) -> list[Piece]:
+    """Return the stretches from the most acid to the most basic way of making it."""
+    if not system.species:
+        return [
+            Piece({}, {system.acid_titrant: 1.0}, np.inf),
+            Piece({}, {system.base_titrant: 1.0}, np.inf),
+        ]
+    first = system.species[0]
+    acid = _share(library, system.acid_material, first)
+    base = _share(library, system.base_material, first)
+    if len(system.species) == 2:
+        return _two_species_pieces(library, system, base)
+    down = [Piece(m, {system.acid_titrant: 1.0}, np.inf) for m in (acid or base,) if m]
+    up = [Piece(m, {system.base_titrant: 1.0}, np.inf) for m in (base or acid,) if m]
+    if not acid or not base:
+        return [*down, *up]
+    exchange = {k: -v for k, v in acid.items()}
+    for key, value in base.items():
+        exchange[key] = exchange.get(key, 0.0) + value
+    return [*down, Piece(acid, exchange, 1.0), *up]
+
+
+def _two_species_pieces(
+    library: Library, system: System, base: Mapping[str, float]
+) -> list[Piece]:
+    second = system.species[1]
+    acid_is_first = _count(library, system.acid_material, system.species[0]) > 0.0
+    if acid_is_first:
+        # the two species share the total: exchange the first for the second
+        acid = _share(library, system.acid_material, system.species[0])
+        other = _share(library, system.base_material, second)
+        exchange = {**{k: -v for k, v in acid.items()}, **other}
+        return [
+            Piece(acid, {system.acid_titrant: 1.0}, np.inf),
+            Piece(acid, exchange, 1.0),
+            Piece(other, {system.base_titrant: 1.0}, np.inf),
+        ]
+    return [
+        Piece(base, {system.acid_titrant: 1.0}, np.inf),
+        Piece(base, {system.base_titrant: 1.0}, np.inf),
+    ]
+
+
+def _count(library: Library, material: str | None, species: str) -> float:
+    if material is None:
+        return 0.0
+    return library.find_material(material).contents.get(species, 0.0)
+
+
+def _share(library: Library, material: str | None, species: str) -> dict[str, float]:
+    """Moles of a material per mole of a species; empty where there is none."""
+    count = _count(library, material, species)
+    return {str(material): 1.0 / count} if count else {}
+
+
+def titrant_of(library: Library, added: Mapping[str, float]) -> Titrant:
+    """Return what one mole of titration brings to the charge balance."""
+    charge, charge2 = 0.0, 0.0
+    components: dict[str, float] = {}
+    for key, moles in added.items():
+        for component, count in library.find_material(key).contents.items():
+            if component in library.ions:
+                z = library.ions[component].charge
+                charge += moles * count * z
+                charge2 += moles * count * z * z
+            elif component in library.species:
+                components[component] = components.get(component, 0.0) + moles * count
+    return Titrant(
+        charge, charge2, {k: v for k, v in components.items() if abs(v) > 1e-12}
+    )
+
+
+def make(
+    library: Library,
+    system: System,
+    concentration_mmol_l: ArrayLike,
+    target_ph: ArrayLike,
+    temperature_c: float,
+    background: Background,
+    law: OsmoticLaw,
+) -> Recipe:
+    """Make a system to a pH in a product, at one or many concentrations.
+
+    Parameters
+    ----------
+    library : Library
+    system : System
+        With at least one material.
+    concentration_mmol_l : array_like, shape (...)
+        Total of the buffering species [mmol/L], above 0.
+    target_ph : array_like, shape (...)
+        pH as measured at ``temperature_c``.
+    temperature_c : float
+        Temperature at which pH is measured [C].
+    background : Background
+    law : OsmoticLaw
+
+    Returns
+    -------
+    Recipe
+
+    Raises
+    ------
+    InputError
+        When the materials cannot give this pH.
+    """
+    c, ph = np.broadcast_arrays(
+        np.asarray(concentration_mmol_l, dtype=float),
+        np.asarray(target_ph, dtype=float),
+    )
+    fill: Array = np.zeros(c.shape)
+    buffer, mixed = _titrated(library, system, c, ph, temperature_c, background, fill)
+    if background.agent is None or background.target_mosm_kg is None:
+        return Recipe(system.id, c, buffer, fill, mixed, ph)
+    slope = _fill_slope(library.find_material(background.agent), library)
+    for _ in range(FILL_CAP):
+        solution = mixed.solve(temperature_c)
+        osmol = mixed.osmolality(temperature_c, solution, law).osmolality_mosm_kg
+        gap = background.target_mosm_kg - osmol
+        new = np.maximum(fill + gap * mixed.water_kg_l / slope, 0.0)
+        settled = (np.abs(gap) <= FILL_TOLERANCE_MOSM_KG) | (
+            (new <= 0.0) & (fill <= 0.0)
+        )
+        if np.all(settled):
+            break
+        fill = new
+        buffer, mixed = _titrated(
+            library, system, c, ph, temperature_c, background, fill
+        )
+    else:
+        msg = (
+            f"{system.id}: the tonicity agent {background.agent} did not settle at "
+            f"{background.target_mosm_kg:g} mosmol/kg within {FILL_CAP} rounds"
+        )
+        raise InputError(msg, hint="choose another agent or target")
+    return Recipe(system.id, c, buffer, fill, mixed, ph)
+
+
+def _fill_slope(agent: Material, library: Library) -> float:
+    """Approximate mosmol/kg that 1 mmol/kg of the agent adds."""
+    particles = sum(agent.contents.values())
+    charged = any(component in library.ions for component in agent.contents)
+    return particles * (0.92 if charged else 1.06)
+
+
+def _titrated(
+    library: Library,
+    system: System,
+    c: Array,
+    ph: Array,
+    temperature_c: float,
+    background: Background,
+    fill: Array,
+) -> tuple[dict[str, Array], Mixture]:
+    """Close the charge balance; the volume of the titrant is settled in a second pass."""
+    others: dict[str, ArrayLike] = dict(background.materials_mmol_l)
+    if background.agent is not None:
+        others[background.agent] = fill + background.materials_mmol_l.get(
+            background.agent, 0.0
+        )
+    water: Array | None = None
+    buffer: dict[str, Array] = {}
+    for _ in range(2):
+        buffer = _close(
+            library, system, c, ph, temperature_c, others, background, water
+        )
+        mixed = _whole(library, buffer, others, background)
+        water = mixed.water_kg_l
+    return buffer, mixed
+
+
+def _whole(
+    library: Library,
+    buffer: Mapping[str, ArrayLike],
+    others: Mapping[str, ArrayLike],
+    background: Background,
+) -> Mixture:
+    materials: dict[str, ArrayLike] = dict(others)
+    for key, amount in buffer.items():
+        materials[key] = np.asarray(materials.get(key, 0.0)) + amount
+    return mixture(
+        library,
+        materials,
+        extras=background.extras,
+        volume_temperature_c=background.volume_temperature_c,
+    )
+
+
+def _close(
+    library: Library,
+    system: System,
+    c: Array,
+    ph: Array,
+    temperature_c: float,
+    others: Mapping[str, ArrayLike],
+    background: Background,
+    water: Array | None,
+) -> dict[str, Array]:
+    """Return the buffer's materials [mmol/L], taking the stretch that fits each state."""
+    done = np.zeros(c.shape, dtype=bool)
+    result: dict[str, Array] = {}
+    ways = pieces(library, system)
+    order = sorted(ways, key=lambda piece: np.isinf(piece.limit))
+    for piece in order:
+        start = {k: v * c for k, v in piece.start.items()}
+        mixed = _whole(library, start, others, background)
+        titrant = titrant_of(library, piece.added)
+        mixed = _with_components(library, mixed, titrant)
+        if water is not None:
+            mixed = _rescaled(mixed, water)
+        amount = mixed.titrate(temperature_c, ph, titrant).amount_mol_kg
+        moles = 1000.0 * amount * mixed.water_kg_l
+        fits = ~done & (moles >= -1e-12) & (moles <= piece.limit * c + 1e-12)
+        for key, base in start.items():
+            result[key] = np.where(fits, base, result.get(key, 0.0))
+        for key, share in piece.added.items():
+            before = result.get(key, np.zeros(c.shape))
+            result[key] = np.where(fits, before + share * moles, before)
+        done |= fits
+        if done.all():
+            break
+    if not done.all():
+        worst = float(ph[~done].flat[0])
+        msg = (
+            f"{system.id} cannot be brought to pH {worst:.2f} with its materials and "
+            f"{system.acid_titrant} or {system.base_titrant}"
+        )
+        raise InputError(msg)
+    return {k: np.maximum(v, 0.0) for k, v in result.items() if np.any(v > 1e-9)}
+
+
+def _with_components(library: Library, mixed: Mixture, titrant: Titrant) -> Mixture:
+    """Add ladders that only the titrant brings, at zero amount."""
+    missing = [name for name in titrant.components if mixed.index(name) < 0]
+    if not missing:
+        return mixed
+    zeros = np.zeros((*np.shape(mixed.water_kg_l), len(missing)))
+    return replace(
+        mixed,
+        ladders=mixed.ladders + tuple(ladder_of(library.species[m]) for m in missing),
+        totals_mol_kg=np.concatenate([mixed.totals_mol_kg, zeros], axis=-1),
+    )
+
+
+def _rescaled(mixed: Mixture, water: Array) -> Mixture:
+    """Return the mixture as if dissolved in another amount of water per litre."""
+    factor = mixed.water_kg_l / water
+    return replace(
+        mixed,
+        totals_mol_kg=mixed.totals_mol_kg * factor[..., np.newaxis],
+        ions_mol_kg={k: v * factor for k, v in mixed.ions_mol_kg.items()},
+        neutrals_mol_kg={k: v * factor for k, v in mixed.neutrals_mol_kg.items()},
+        water_kg_l=water,
+    )
+
+
+def weighed(
+    library: Library, amounts_mmol_l: Mapping[str, float]
+) -> Sequence[tuple[str, float, float]]:
+    """Return (material, mmol/L, g/L) for each material that is there."""
+    rows = []
+    for key, mmol_l in amounts_mmol_l.items():
+        if mmol_l > 0.0:
+            mass = library.find_material(key).molar_mass_g_mol.value
+            rows.append((key, float(mmol_l), float(mmol_l) * mass / 1000.0))
+    return rows
