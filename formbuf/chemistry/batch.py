@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 
@@ -119,15 +119,19 @@ def prepare(
     *,
     open_components: Sequence[str] = (),
     model: ActivityModel = "guggenheim",
+    pk_shift: Mapping[str, ArrayLike] | None = None,
 ) -> tuple[Batch, tuple[int, ...]]:
     """Flatten and broadcast the inputs of a call; return the batch and its shape.
+
+    ``pk_shift`` holds, by component, what is added to its pK in each state, shape
+    (..., steps); the constants of aggregates move with the first step.
 
     Raises
     ------
     InputError
         On a shape that does not fit, an amount that is negative, not finite or above
-        1000 mol/kg, a temperature outside -20 to 121 C, an unusable ladder, or an
-        open component that is not listed.
+        1000 mol/kg, a temperature outside -20 to 121 C, an unusable ladder, a pK
+        beyond 25 either way, or an open component that is not listed.
     """
     totals = np.asarray(totals_mol_kg, dtype=float)
     if totals.ndim == 0 or totals.shape[-1] != len(ladders):
@@ -159,8 +163,13 @@ def prepare(
     n = int(np.prod(shape, dtype=int))
     flat_t = t.reshape(1) if t.size == 1 else np.broadcast_to(t, shape).reshape(n)
     wide = np.broadcast_to(totals, (*shape, len(ladders))).reshape(n, len(ladders))
+    shifts = {
+        name: _flat_shift(name, values, shape)
+        for name, values in (pk_shift or {}).items()
+    }
     equilibria = tuple(
-        _equilibrium(one, flat_t, one.name in open_components) for one in ladders
+        _equilibrium(one, flat_t, one.name in open_components, shifts.get(one.name))
+        for one in ladders
     )
     columns = [np.ascontiguousarray(wide[:, j]) for j in range(len(ladders))]
     flat_charge = np.broadcast_to(charge, shape).reshape(n)
@@ -216,7 +225,23 @@ def _water_at(t: float, model: ActivityModel) -> tuple[Array, Array]:
     return _frozen(10.0 ** -pkw(flat)), _frozen(activity.slope(flat, model))
 
 
-def _equilibrium(ladder: Ladder, t: Array, is_open: bool) -> Equilibrium:
+def _flat_shift(name: str, values: ArrayLike, shape: tuple[int, ...]) -> Array:
+    """Return the shifts of one component as (states, steps)."""
+    given = np.asarray(values, dtype=float)
+    n = int(np.prod(shape, dtype=int))
+    try:
+        wide = np.broadcast_to(given, (*shape, given.shape[-1]))
+    except (ValueError, IndexError):
+        msg = f"pK shifts of {name} have shape {given.shape}, allowed {shape} and steps"
+        raise InputError(msg) from None
+    return wide.reshape(n, given.shape[-1])
+
+
+def _equilibrium(
+    ladder: Ladder, t: Array, is_open: bool, shift: Array | None
+) -> Equilibrium:
+    if shift is not None:
+        return _constants(ladder, t, is_open, shift)
     if t.size == 1:
         return _equilibrium_at(ladder, float(t[0]), is_open)
     return _constants(ladder, t, is_open)
@@ -227,9 +252,18 @@ def _equilibrium_at(ladder: Ladder, t: float, is_open: bool) -> Equilibrium:
     return _constants(ladder, np.array([t]), is_open)
 
 
-def _constants(ladder: Ladder, t: Array, is_open: bool) -> Equilibrium:
+def _constants(
+    ladder: Ladder, t: Array, is_open: bool, shift: Array | None = None
+) -> Equilibrium:
     """Constants of one ladder at flat temperatures."""
     pks = pk_at(ladder, t)
+    if shift is not None:
+        if shift.shape[-1] != pks.shape[-1]:
+            msg = (
+                f"{ladder.name}: {shift.shape[-1]} pK shifts for {pks.shape[-1]} steps"
+            )
+            raise InputError(msg)
+        pks = pks + shift
     if pks.shape[-1] > STEP_LIMIT:
         msg = f"{ladder.name} has {pks.shape[-1]} steps: allowed are {STEP_LIMIT}"
         raise InputError(msg, hint="give distant groups as components of their own")
@@ -241,7 +275,11 @@ def _constants(ladder: Ladder, t: Array, is_open: bool) -> Equilibrium:
         raise InputError(msg)
     aggregates: tuple[Array, ...] = ()
     if ladder.aggregates and not is_open:
-        formed = 10.0 ** log10_aggregate_constants(ladder, t)
+        logs = log10_aggregate_constants(ladder, t)
+        if shift is not None:
+            charges = [a.charge for a in ladder.aggregates]
+            logs = logs + shift[..., :1] * np.asarray(charges, dtype=float)
+        formed = 10.0**logs
         aggregates = tuple(_frozen(formed[..., k]) for k in range(formed.shape[-1]))
     constants = 10.0**-pks
     steps = tuple(_frozen(constants[..., k]) for k in range(constants.shape[-1]))

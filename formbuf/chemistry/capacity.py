@@ -4,7 +4,7 @@ beta = ln 10 ( [H+] + [OH-] + sum_j C_j Var_j(charge) )
 
 (Van Slyke 1922, J. Biol. Chem. 52, 525, in the general form that holds for any
 number of overlapping steps) at fixed activity coefficients. With their feedback
-the true slope is 0 to 7 % higher, most for citrate and phosphate at low salt.
+the true slope is up to 10 % higher, most for citrate and phosphate without other salt.
 """
 
 from __future__ import annotations

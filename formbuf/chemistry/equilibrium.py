@@ -14,7 +14,7 @@ water (taken as one).
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -39,6 +39,9 @@ EARLY_CAP = 8
 NEWTON_CAP = 60
 #: Newton steps after which solved states are looked for.
 LOOK_FROM = 3
+#: Longest step of pH, and the step below which Newton's method is left alone.
+LONGEST_STEP = 3.0
+SMALL_STEP = 0.1
 BISECTION_CAP = 62
 #: States solved together, so that the arrays of one chunk stay in the cache.
 CHUNK = 8192
@@ -94,6 +97,7 @@ def solve(
     *,
     open_components: Sequence[str] = (),
     model: ActivityModel = "guggenheim",
+    pk_shift: Mapping[str, ArrayLike] | None = None,
 ) -> Solution:
     """Solve electroneutrality for the pH of any number of mixtures at once.
 
@@ -115,6 +119,9 @@ def solve(
         Components in exchange with a gas.
     model : {"guggenheim", "ideal"}
         Activity model.
+    pk_shift : mapping of str to array_like, shape (..., steps), optional
+        What is added to the pK of a component in each state, for draws of its
+        uncertainty; the constants of aggregates move with the first step.
 
     Returns
     -------
@@ -141,6 +148,7 @@ def solve(
         temperature_c,
         open_components=open_components,
         model=model,
+        pk_shift=pk_shift,
     )
     found = _Found.empty(batch.size, len(batch.equilibria))
     late: list[NDArray[np.intp]] = []
@@ -225,15 +233,18 @@ def _newton(
 ) -> NDArray[np.intp]:
     """Newton's method in pH and root of ionic strength; return the rows left over.
 
-    States are stored as soon as their next step is below the tolerance. The bracket
-    on pH is kept only where a state did not do without it.
+    States are stored as soon as their next step is below the tolerance. What a first
+    pass leaves goes on with a bracket on pH, and a step that does not shrink halves it.
+    The strong ions alone give the least ionic strength.
     """
     work = batch.take(_as_slice(rows))
     if from_start:
         ph, root = _first_guess(work)
     else:
         ph, root = found.ph[rows], found.root[rows]
+    floor = np.sqrt(0.5 * work.strong_charge2)
     low, high = np.full(rows.size, PH_LOW), np.full(rows.size, PH_HIGH)
+    before = np.full(rows.size, PH_HIGH)
     for step in range(1, cap + 1):
         at = balance(work, ph, root)
         d_ph, d_root = _newton_step(work, at, root)
@@ -252,16 +263,20 @@ def _newton(
                 rows, work = rows[keep], work.take(keep)
                 ph, root, low, high = ph[keep], root[keep], low[keep], high[keep]
                 d_ph, d_root = d_ph[keep], d_root[keep]
+                floor, before = floor[keep], before[keep]
                 at.charge = at.charge[keep]
+        d_ph = np.minimum(np.maximum(d_ph, -LONGEST_STEP), LONGEST_STEP)
         if from_start:
             ph = np.minimum(np.maximum(ph + d_ph, PH_LOW), PH_HIGH)
         else:
             acid = at.charge > 0.0
             low, high = np.where(acid, ph, low), np.where(acid, high, ph)
-            trial = ph + d_ph
-            inside = (trial > low - BRACKET_MARGIN) & (trial < high + BRACKET_MARGIN)
-            ph = np.where(inside, trial, 0.5 * (low + high))
-        root = np.maximum(root + d_root, 0.2 * root)
+            trial, size = ph + d_ph, np.abs(d_ph)
+            good = (trial > low - BRACKET_MARGIN) & (trial < high + BRACKET_MARGIN)
+            good &= (size <= 0.5 * before) | (size <= SMALL_STEP)
+            ph = np.where(good, trial, 0.5 * (low + high))
+            before = np.where(good, size, PH_HIGH)
+        root = np.maximum(np.maximum(root + d_root, 0.2 * root), floor)
     found.ph[rows], found.root[rows] = ph, root
     return rows
 
@@ -273,6 +288,8 @@ def _first_guess(batch: Batch) -> tuple[Array, Array]:
     if len(batch.equilibria) != 1 or batch.equilibria[0].is_open:
         return np.full(n, 7.0), np.sqrt(0.5 * carried) + 0.01
     eq, amount = batch.equilibria[0], batch.totals[0]
+    if eq.ladder.is_macro_ion:
+        return np.full(n, 7.0), np.sqrt(0.5 * carried) + 0.01
     steps = len(eq.step_k)
     lost = eq.ladder.top_charge + batch.strong_charge / np.maximum(amount, 1e-12)
     lost = np.clip(lost, 1e-3, steps - 1e-3)

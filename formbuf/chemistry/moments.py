@@ -194,9 +194,11 @@ def component_sums(
 
 
 def _macro_ion_sums(eq: Equilibrium, amount: Array, u: Array) -> Sums:
-    """Sums of a macro-ion: apparent pK, and no part in the ionic strength."""
+    """Return the sums of a macro-ion: apparent pK, no part in the ionic strength."""
     if eq.ladder.curve is not None:
-        charge, variance = macro_ion.curve_charge(eq.ladder.curve, np.log10(u))
+        charge, variance = macro_ion.curve_charge(
+            eq.ladder.curve, np.log10(u), -np.log10(eq.step_k[0])
+        )
     else:
         charge, variance = macro_ion.sites_charge(eq.ladder.sites, eq.step_k, u)
     zero = np.zeros(np.shape(u))

@@ -2,13 +2,14 @@
 
 At a known ionic strength the charge balance is linear in the amount of titrant,
 so that the amount is explicit; only the ionic strength is iterated, by Newton's
-method. A titrant is anything with a composition: a strong acid or base, a weak
-acid such as acetic acid, or the exchange of one buffer form for the other.
+method after one substitution. A titrant is anything with a composition: a strong
+acid or base, a weak acid such as acetic acid, or the exchange of one buffer form for
+the other.
 """
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -26,7 +27,7 @@ Array = NDArray[np.float64]
 
 ITERATION_CAP = 100
 #: Relative step of the root of ionic strength at which the amount counts as settled.
-TOLERANCE = 1e-11
+TOLERANCE = 1e-10
 #: Charge per mole of titrant below which it moves nothing.
 LEAST_CHARGE = 1e-9
 
@@ -84,6 +85,7 @@ def titrant_for_ph(
     *,
     open_components: Sequence[str] = (),
     model: ActivityModel = "guggenheim",
+    pk_shift: Mapping[str, ArrayLike] | None = None,
 ) -> Titration:
     """Amount of titrant that gives a mixture the stated pH.
 
@@ -95,7 +97,7 @@ def titrant_for_ph(
         Wanted pH (conventional activity scale) at ``temperature_c``, 0 to 14.
     titrant : Titrant
         It must not bring a component that forms aggregates.
-    open_components, model
+    open_components, model, pk_shift
         As for ``solve``.
 
     Returns
@@ -125,11 +127,12 @@ def titrant_for_ph(
         np.asarray(temperature_c, dtype=float) + 0.0 * wanted,
         open_components=open_components,
         model=model,
+        pk_shift=pk_shift,
     )
     unit = _one_mole(batch, titrant)
     flat_ph = np.broadcast_to(wanted, shape).reshape(batch.size)
     root = np.sqrt(0.5 * batch.strong_charge2) + 0.05
-    for _ in range(ITERATION_CAP):
+    for count in range(ITERATION_CAP):
         at = balance(batch, flat_ph, root)
         amount, double_ionic, d_double = _amount(at, unit, titrant, flat_ph, root)
         denominator = 1.0 + activity.ION_SIZE_FACTOR * root
@@ -146,7 +149,8 @@ def titrant_for_ph(
                 (root * root).reshape(shape),
                 charges.reshape((*shape, len(columns))),
             )
-        root = np.maximum(root - step, 0.2 * root)
+        following = np.sqrt(0.5 * double_ionic) if count == 0 else root - step
+        root = np.maximum(following, 0.2 * root)
     msg = (
         f"the amount of titrant did not settle in {ITERATION_CAP} steps "
         f"(last change of the root of ionic strength {np.abs(step).max():.1e})"

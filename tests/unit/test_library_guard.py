@@ -30,8 +30,8 @@ EXPECTED: dict[str, tuple[int, dict[str, float]]] = {
             "pka_uncertainty": 4.581,
             "dh_kj_mol": 1078.33,
             "dh_uncertainty_kj_mol": 65.4,
-            "dcp_j_mol_k": -8108.0,
-            "dcp_uncertainty_j_mol_k": 2195.0,
+            "dcp_j_mol_k": -8072.0,
+            "dcp_uncertainty_j_mol_k": 2175.0,
         },
     ),
     "associations.csv": (
