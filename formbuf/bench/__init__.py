@@ -1,0 +1,1 @@
+"""What the laboratory does with a chosen buffer: predict, weigh, challenge, dilute."""

@@ -1,0 +1,43 @@
+"""Options that several commands share, with one wording."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Annotated
+
+import typer
+
+if TYPE_CHECKING:
+    from formbuf.library import Library
+
+BriefArgument = Annotated[
+    str, typer.Argument(metavar="BRIEF", help="Product brief, a TOML file.")
+]
+FormatOption = Annotated[
+    str | None,
+    typer.Option(
+        "--format",
+        metavar="FORMAT",
+        help="table, json, csv or markdown; with -o, the ending decides.",
+    ),
+]
+JsonOption = Annotated[bool, typer.Option("--json", help="Short for --format json.")]
+OutputOption = Annotated[
+    str | None,
+    typer.Option("--output", "-o", metavar="FILE", help="Write to a file."),
+]
+KnowledgeOption = Annotated[
+    str | None,
+    typer.Option(
+        "--knowledge",
+        metavar="DIR",
+        help="Directory with tables of your own, laid over ours.",
+    ),
+]
+
+
+def open_library(knowledge: str | None) -> Library:
+    """Load the knowledge, with the user's tables over it."""
+    from formbuf.library import load_library
+
+    return load_library(None if knowledge is None else Path(knowledge))

@@ -1,0 +1,1 @@
+"""Results as JSON, CSV, Markdown and tables for the terminal."""
