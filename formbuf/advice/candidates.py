@@ -137,7 +137,8 @@ def judge_product(
         brief.liquid_storage_temperatures_c,
         brief.ph.measure_temperature_c,
     )
-    frost = frozen.freeze(case, system, product, concentration_mmol_l)
+    kept = case.thorough or all(one.overridden_by for one in fired)
+    frost = frozen.freeze(case, system, product, concentration_mmol_l) if kept else None
     if frost is not None:
         judged = {**judged, "frozen_drift": frozen.criterion(case, frost)}
     elif said := frozen.warm_note(case, system):

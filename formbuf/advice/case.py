@@ -40,6 +40,8 @@ class Case:
     situation : Situation
     facts : FactSheet
         Facts of the product that rules and limits test.
+    thorough : bool
+        Whether candidates that a screen dropped are assessed on freezing too.
     """
 
     library: Library
@@ -52,9 +54,10 @@ class Case:
     rulebook: Rulebook
     situation: Situation
     facts: FactSheet
+    thorough: bool = False
 
 
-def case_for(completed: Completed) -> Case:
+def case_for(completed: Completed, *, thorough: bool = False) -> Case:
     """Gather the case of a completed brief."""
     library, brief = completed.library, completed.brief
     law = osmotic_law(library)
@@ -79,6 +82,7 @@ def case_for(completed: Completed) -> Case:
         book,
         situation,
         product_facts(situation),
+        thorough,
     )
 
 

@@ -16,19 +16,21 @@ from formbuf.chemistry.capacity import (
 )
 from formbuf.chemistry.equilibrium import Solution
 from formbuf.chemistry.osmolality import OsmoticLaw
-from formbuf.chemistry.titration import STRONG_ACID, STRONG_BASE
-from formbuf.constants import IONIZATION_HIGH_C, IONIZATION_LOW_C
+from formbuf.constants import (
+    IONIZATION_HIGH_C,
+    IONIZATION_LOW_C,
+    LIQUID_HIGH_C,
+    LIQUID_LOW_C,
+)
 from formbuf.library import Library
 from formbuf.product.composition import Mixture, mixture
+from formbuf.product.liquid import liquid_temperatures, titratable_acidity_mmol_l
 from formbuf.product.product_brief import ProductBrief
 from formbuf.product.recipe import Recipe, weighed
 
 Array = NDArray[np.float64]
 
 SLOPE_STEP_K = 0.5
-PHYSIOLOGICAL_PH = 7.4
-#: Least liquid temperature at which pH is reported; colder is frozen or extrapolated.
-COLDEST_LIQUID_C = -20.0
 
 
 @dataclass(frozen=True)
@@ -66,19 +68,6 @@ class Product:
     own_capacity_share: float
 
 
-def liquid_temperatures(brief: ProductBrief) -> dict[float, tuple[str, ...]]:
-    """Temperatures at which the product is liquid, with what each stands for."""
-    found: dict[float, list[str]] = {}
-    found.setdefault(brief.ph.measure_temperature_c, []).append("measure")
-    found.setdefault(brief.ph.prepare_temperature_c, []).append("prepare")
-    for entry in brief.storage:
-        if entry.state_at() == "liquid" and entry.temperature_c >= COLDEST_LIQUID_C:
-            kinds = found.setdefault(entry.temperature_c, [])
-            if entry.kind not in kinds:
-                kinds.append(entry.kind)
-    return {t: tuple(found[t]) for t in sorted(found)}
-
-
 def evaluate(
     library: Library,
     brief: ProductBrief,
@@ -113,7 +102,9 @@ def evaluate(
     """
     temperatures = liquid_temperatures(brief)
     at = np.array(list(temperatures))
-    many = np.concatenate([at, at + SLOPE_STEP_K, at - SLOPE_STEP_K])
+    warmer = np.minimum(at + SLOPE_STEP_K, LIQUID_HIGH_C)
+    cooler = np.maximum(at - SLOPE_STEP_K, LIQUID_LOW_C)
+    many = np.concatenate([at, warmer, cooler])
     solution = whole.solve(many)
     measure = list(temperatures).index(brief.ph.measure_temperature_c)
     own = [whole.index(name) for name in species if whole.index(name) >= 0]
@@ -141,7 +132,7 @@ def evaluate(
         float(osmol.osmolality_mosm_kg),
         alone,
         tuple(f"{a} with {b}" for a, b in osmol.unfitted_pairs),
-        titratable_acidity_mmol_l(whole, t, float(measured.ph)),
+        float(titratable_acidity_mmol_l(whole, t, measured.ph)),
         float(parts[first]) / own_total if own_total > 0.0 and first >= 0 else 0.0,
     )
 
@@ -174,7 +165,10 @@ def _states(
     water = 1000.0 * float(whole.water_kg_l)
     total = capacity_mol_kg_ph(single) * water
     shares = component_capacity_mol_kg_ph(single)[:, own].sum(axis=-1) * water
-    slope = (ph[n : 2 * n] - ph[2 * n :]) / (2.0 * SLOPE_STEP_K)
+    slope = (ph[n : 2 * n] - ph[2 * n :]) / (
+        np.minimum(at + SLOPE_STEP_K, LIQUID_HIGH_C)
+        - np.maximum(at - SLOPE_STEP_K, LIQUID_LOW_C)
+    )
     return tuple(
         LiquidState(
             float(t),
@@ -201,14 +195,6 @@ def _species_states(
         for p in whole.dissolved(temperature_c, solution)
     ]
     return tuple(row for row in rows if row.mmol_l > 1e-6)
-
-
-def titratable_acidity_mmol_l(whole: Mixture, temperature_c: float, ph: float) -> float:
-    """Strong base [mmol/L] that brings a product from its pH to 7.4; negative: acid."""
-    titrant = STRONG_BASE if ph < PHYSIOLOGICAL_PH else STRONG_ACID
-    amount = whole.titrate(temperature_c, PHYSIOLOGICAL_PH, titrant).amount_mol_kg
-    sign = 1.0 if ph < PHYSIOLOGICAL_PH else -1.0
-    return sign * 1000.0 * float(amount) * float(whole.water_kg_l)
 
 
 def single(recipe: Recipe) -> tuple[dict[str, float], float]:

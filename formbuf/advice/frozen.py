@@ -8,7 +8,7 @@ from formbuf.advice.case import Case
 from formbuf.advice.evaluate import Product
 from formbuf.advice.results import CriterionResult
 from formbuf.chemistry.freezing_records import FreezingContents, IonAmount
-from formbuf.errors import InputError
+from formbuf.errors import ConvergenceError, InputError
 from formbuf.library.records import System
 from formbuf.product.freezing_assess import (
     FreezingAssessment,
@@ -16,6 +16,7 @@ from formbuf.product.freezing_assess import (
     evidence_of,
     freezing_contents,
 )
+from formbuf.product.freezing_data import observations
 from formbuf.product.vocabulary import AMORPHOUS_SUGARS
 
 #: Shelf temperature at which a product is taken to freeze before drying [C].
@@ -115,7 +116,11 @@ def freeze_to(
             buffer_g_l=mass,
         )
 
-    found = assess(contents)
+    try:
+        found = assess(contents)
+    except (InputError, ConvergenceError) as error:
+        found = _unassessed(case, system, str(error))
+        return Frozen(found, found.freezing_class, "", sugar)
     counted, remarks = found.freezing_class, []
     swapped = _with_sodium(case, system, contents)
     if swapped is not None:
@@ -136,6 +141,25 @@ def freeze_to(
             )
             counted = eased
     return Frozen(found, counted, "; ".join(remarks), sugar)
+
+
+def _unassessed(case: Case, system: System, why: str) -> FreezingAssessment:
+    """Return an answer without paths: what the model refused, and the evidence."""
+    known = evidence_of(case.library, system)
+    return FreezingAssessment(
+        system.id,
+        known.freezing_class,
+        known.basis,
+        f"not computed ({why}); {known.reason}",
+        known.sources,
+        quantified=False,
+        paths=(),
+        freezing_shift=None,
+        cooling_shift=None,
+        where_samples_fall="",
+        observations=observations(case.library, system.id),
+        notes=(),
+    )
 
 
 def warm_note(case: Case, system: System) -> str:

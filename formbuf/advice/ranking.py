@@ -79,9 +79,8 @@ def rank(candidates: Sequence[Candidate], settings: Settings) -> tuple[Candidate
     heads = [members[0] for members in groups.values()]
     ties = _ties(heads, settings)
     result: list[Candidate] = []
-    led = False
     for position, head in enumerate(heads, start=1):
-        standing, led = _standing(head, led=led, placed=result)
+        standing = _standing(head, result)
         result.append(
             replace(head, rank=position, standing=standing, tied_with=ties[head.key])
         )
@@ -106,14 +105,14 @@ def _order(candidate: Candidate) -> tuple[float, str]:
     return (-round(candidate.desirability or 0.0, 12), candidate.key)
 
 
-def _standing(
-    head: Candidate, *, led: bool, placed: Sequence[Candidate]
-) -> tuple[Standing, bool]:
-    if not led:
-        return "lead", True
-    if not any(c.standing == "back-up" for c in placed):
-        return "back-up", led
-    return "viable", led
+def _standing(head: Candidate, placed: Sequence[Candidate]) -> Standing:
+    """Stand first as lead; the next that buffers by another species as back-up."""
+    if not placed:
+        return "lead"
+    taken = any(c.standing == "back-up" for c in placed)
+    if not taken and head.system.species[:1] != placed[0].system.species[:1]:
+        return "back-up"
+    return "viable"
 
 
 def _ties(heads: Sequence[Candidate], settings: Settings) -> dict[str, tuple[str, ...]]:

@@ -17,6 +17,8 @@ from formbuf.product.product_parts import Assumption
 if TYPE_CHECKING:
     import pandas as pd
 
+    from formbuf.advice.confidence_records import CandidateConfidence, Confidence
+
 Standing = Literal["lead", "back-up", "viable", "not evaluable", "screened out"]
 
 
@@ -176,6 +178,7 @@ class Candidate:
     standing: Standing = "viable"
     tied_with: tuple[str, ...] = ()
     mixture: Mixture | None = field(default=None, repr=False)
+    confidence: CandidateConfidence | None = field(default=None, repr=False)
 
     @property
     def dropped_by(self) -> tuple[Screen, ...]:
@@ -212,6 +215,8 @@ class Shortlist:
         Findings that hold for every candidate.
     missing_facts : tuple of MissingFact
         Unsaid facts that could change a standing, those that matter most first.
+    confidence : Confidence or None
+        What draws tell, where they were made (``advice.confidence``).
     """
 
     brief: ProductBrief
@@ -224,6 +229,7 @@ class Shortlist:
     warnings: tuple[str, ...] = ()
     product_findings: tuple[Any, ...] = ()
     missing_facts: tuple[Any, ...] = ()
+    confidence: Confidence | None = field(default=None, repr=False)
 
     @property
     def ranked(self) -> tuple[Candidate, ...]:

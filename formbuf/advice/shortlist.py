@@ -19,7 +19,7 @@ from formbuf.product.brief import Brief, complete
 __all__ = ["Shortlist", "shortlist"]
 
 
-def shortlist(brief: Brief, library: Library) -> Shortlist:
+def shortlist(brief: Brief, library: Library, *, thorough: bool = False) -> Shortlist:
     """Size, screen and rank every acceptable buffer system for a product.
 
     Parameters
@@ -28,6 +28,8 @@ def shortlist(brief: Brief, library: Library) -> Shortlist:
         As returned by ``formbuf.read_brief``.
     library : Library
         As returned by ``formbuf.load_library``.
+    thorough : bool
+        Assess candidates that a screen dropped on freezing too, for an explanation.
 
     Returns
     -------
@@ -46,7 +48,7 @@ def shortlist(brief: Brief, library: Library) -> Shortlist:
     Desirability: Derringer & Suich 1980, J. Qual. Technol. 12, 214.
     """
     completed = complete(brief, library)
-    case = case_for(completed)
+    case = case_for(completed, thorough=thorough)
     check_overrides(
         case.brief.override,
         case.rulebook,

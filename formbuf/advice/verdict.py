@@ -31,8 +31,8 @@ def verdict(candidates: Sequence[Candidate]) -> str:
     ties = [by_key[key].name for key in lead.tied_with]
     if ties:
         sentences[0] = f"Lead: {made}, tied within uncertainty with {listed(ties)}."
-    if len(heads) > 1:
-        backup = heads[1]
+    backup = next((c for c in heads if c.standing == "back-up"), None)
+    if backup is not None:
         sentences.append(
             f"Back-up: {backup.concentration_mmol_l:g} mmol/L {backup.name}."
         )

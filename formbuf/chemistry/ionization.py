@@ -98,7 +98,7 @@ class Ladder:
         """
         if self.is_macro_ion:
             return (0,)
-        return tuple(self.top_charge - k for k in range(len(self.pka) + 1))
+        return tuple(range(self.top_charge, self.top_charge - len(self.pka) - 1, -1))
 
     @property
     def has_unknown_enthalpy(self) -> bool:

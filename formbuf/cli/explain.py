@@ -72,14 +72,14 @@ def judged(
     """
     from formbuf.advice.shortlist import shortlist
 
-    result = shortlist(brief, library)
+    result = shortlist(brief, library, thorough=True)
     candidate = _find(result, name)
     if candidate is not None:
         return result, candidate, ()
     if name not in result.library.systems:
         raise _unknown(result, name)
     asked = brief.model_copy(update={"require": (*brief.require, name)})
-    result = shortlist(asked, library)
+    result = shortlist(asked, library, thorough=True)
     candidate = _find(result, name)
     if candidate is None:
         raise _unknown(result, name)

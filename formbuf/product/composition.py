@@ -31,6 +31,8 @@ AmountBasis = Literal["solution", "water"]
 
 #: Ions whose complexes with citrate, edetate or phosphate the solver leaves out.
 COMPLEXING_IONS = frozenset({"calcium", "magnesium", "zinc", "aluminium", "iron"})
+#: Temperature at which a freezing-point osmometer compares solutions [C].
+OSMOMETER_TEMPERATURE_C = 0.0
 #: Solutes may not take more than this share of the volume.
 MOST_SOLUTE_VOLUME_ML_L = 600.0
 
@@ -133,11 +135,15 @@ class Mixture:
         solution: Solution,
         law: osmolality.OsmoticLaw,
     ) -> osmolality.Osmolality:
-        """Osmolality of the whole solution."""
+        """Osmolality of the whole solution, as a freezing-point osmometer reads it.
+
+        The particles are those of the solution solved at ``temperature_c``; the
+        coefficients, mostly fitted to freezing points, hold near 0 C.
+        """
         return osmolality.osmolality(
-            self.dissolved(temperature_c, solution),
+            self.dissolved(temperature_c, solution) + speciation.water_ions(solution),
             self.neutrals_mol_kg,
-            temperature_c,
+            OSMOMETER_TEMPERATURE_C,
             law,
         )
 
@@ -334,20 +340,25 @@ def _assemble(
         neutrals,
         water,
         open_components,
-        _notes(ions, [ladder.name for ladder in ladders]),
+        combined_notes(ions, [ladder.name for ladder in ladders]),
     )
 
 
-def _notes(ions: Mapping[str, Array], components: Sequence[str]) -> tuple[str, ...]:
+def combined_notes(
+    ions: Mapping[str, Array], components: Sequence[str]
+) -> tuple[str, ...]:
+    """Say which complexes the solver leaves out for these ions and components."""
+    notes = []
+    if "sulfate" in components:
+        notes.append("ion pairs of sulfate are not modelled")
     metals = sorted(name for name in ions if name in COMPLEXING_IONS)
     binders = sorted(
         {"citrate", "phosphate", "edta", "carbonate", "tartrate", "malate"}
         & set(components)
     )
     if metals and binders:
-        text = (
+        notes.append(
             f"complexes of {', '.join(metals)} with {', '.join(binders)} are not "
             "modelled: pH and osmolality leave them out"
         )
-        return (text,)
-    return ()
+    return tuple(notes)

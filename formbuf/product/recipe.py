@@ -22,6 +22,7 @@ from formbuf.errors import InputError
 from formbuf.library import Library
 from formbuf.library.records import Material, System
 from formbuf.product.composition import Extra, Mixture, ladder_of, mixture
+from formbuf.product.recipe_search import searched_mmol_l, titrated_mmol_l
 
 Array = NDArray[np.float64]
 
@@ -208,11 +209,18 @@ def make(
     buffer, mixed = _titrated(library, system, c, ph, temperature_c, background, fill)
     if background.agent is None or background.target_mosm_kg is None:
         return Recipe(system.id, c, buffer, fill, mixed, ph)
-    slope = _fill_slope(library.find_material(background.agent), library)
+    slope = np.full(
+        c.shape, _fill_slope(library.find_material(background.agent), library)
+    )
+    before: tuple[Array, Array] | None = None
     for _ in range(FILL_CAP):
         solution = mixed.solve(temperature_c)
         osmol = mixed.osmolality(temperature_c, solution, law).osmolality_mosm_kg
         gap = background.target_mosm_kg - osmol
+        molal = fill / mixed.water_kg_l
+        if before is not None:
+            slope = _secant(slope, molal - before[0], osmol - before[1])
+        before = molal, osmol
         new = np.maximum(fill + gap * mixed.water_kg_l / slope, 0.0)
         settled = (np.abs(gap) <= FILL_TOLERANCE_MOSM_KG) | (
             (new <= 0.0) & (fill <= 0.0)
@@ -221,7 +229,14 @@ def make(
             break
         fill = new
         buffer, mixed = _titrated(
-            library, system, c, ph, temperature_c, background, fill
+            library,
+            system,
+            c,
+            ph,
+            temperature_c,
+            background,
+            fill,
+            water=mixed.water_kg_l,
         )
     else:
         msg = (
@@ -239,6 +254,14 @@ def _fill_slope(agent: Material, library: Library) -> float:
     return particles * (0.92 if charged else 1.06)
 
 
+def _secant(slope: Array, step: Array, gained: Array) -> Array:
+    """Osmolality gained per molality of agent over the last step, where it is sound."""
+    moved = np.abs(step) > 1e-6
+    seen = np.divide(gained, step, out=slope.copy(), where=moved)
+    sound = (seen > 0.5 * slope) & (seen < 2.0 * slope)
+    return np.where(sound, seen, slope)
+
+
 def _titrated(
     library: Library,
     system: System,
@@ -247,16 +270,20 @@ def _titrated(
     temperature_c: float,
     background: Background,
     fill: Array,
+    *,
+    water: Array | None = None,
 ) -> tuple[dict[str, Array], Mixture]:
-    """Close the charge balance; the volume of the titrant is settled in a second pass."""
+    """Close the charge balance; the volume of the titrant is settled in a second pass.
+
+    With the water of an earlier round one pass is enough.
+    """
     others: dict[str, ArrayLike] = dict(background.materials_mmol_l)
     if background.agent is not None:
         others[background.agent] = fill + background.materials_mmol_l.get(
             background.agent, 0.0
         )
-    water: Array | None = None
     buffer: dict[str, Array] = {}
-    for _ in range(2):
+    for _ in range(2 if water is None else 1):
         buffer = _close(
             library, system, c, ph, temperature_c, others, background, water
         )
@@ -304,8 +331,11 @@ def _close(
         mixed = _with_components(library, mixed, titrant)
         if water is not None:
             mixed = _rescaled(mixed, water)
-        amount = mixed.titrate(temperature_c, ph, titrant).amount_mol_kg
-        moles = 1000.0 * amount * mixed.water_kg_l
+        moles = titrated_mmol_l(
+            mixed, titrant, temperature_c, ph, has_end=bool(np.isfinite(piece.limit))
+        )
+        if moles is None:
+            moles = _searched(library, piece, c, ph, temperature_c, others, background)
         fits = ~done & (moles >= -1e-12) & (moles <= piece.limit * c + 1e-12)
         for key, base in start.items():
             result[key] = np.where(fits, base, result.get(key, 0.0))
@@ -323,6 +353,27 @@ def _close(
         )
         raise InputError(msg)
     return {k: np.maximum(v, 0.0) for k, v in result.items() if np.any(v > 1e-9)}
+
+
+def _searched(
+    library: Library,
+    piece: Piece,
+    c: Array,
+    ph: Array,
+    temperature_c: float,
+    others: Mapping[str, ArrayLike],
+    background: Background,
+) -> Array:
+    """Return the amount along a stretch that exchanges an aggregating species."""
+
+    def ph_at(moles: Array) -> Array:
+        amounts = {k: v * c for k, v in piece.start.items()}
+        for key, share in piece.added.items():
+            amounts[key] = amounts.get(key, 0.0) + share * moles
+        made = {k: np.maximum(v, 0.0) for k, v in amounts.items()}
+        return _whole(library, made, others, background).solve(temperature_c).ph
+
+    return searched_mmol_l(ph_at, ph, piece.limit * c)
 
 
 def _with_components(library: Library, mixed: Mixture, titrant: Titrant) -> Mixture:

@@ -47,7 +47,8 @@ def sized(case_, system_id):
 def test_ten_times_the_load_asks_for_ten_times_the_buffer():
     """`practice`: near its pK a buffer's capacity is proportional to concentration."""
     small = sized(
-        case(loads={"acid_mmol_l": 0.05, "base_mmol_l": 0.05}), "histidine_hydrochloride"
+        case(loads={"acid_mmol_l": 0.05, "base_mmol_l": 0.05}),
+        "histidine_hydrochloride",
     )
     large = sized(
         case(loads={"acid_mmol_l": 0.5, "base_mmol_l": 0.5}), "histidine_hydrochloride"
