@@ -18,7 +18,9 @@ from typing import Any
 
 from formbuf.chemistry.freezing import freeze_path, unfrozen_ph
 from formbuf.chemistry.freezing_records import (
+    HIGHEST_C,
     Assumption,
+    Brine,
     FreezingContents,
     FreezingPath,
 )
@@ -166,11 +168,7 @@ def assess_freezing(
     paths = tuple(
         freeze_path(contents, wanted, assumption=a, brine=brine) for a in assumptions
     )
-    still = unfrozen_ph(contents, wanted, brine=brine)
-    shift, at = _largest_shift(paths, still)
-    cooling = None
-    if at is not None and still[at] is not None:
-        cooling = float(still[at] or 0.0) - paths[0].ph_prepared
+    shift, cooling = _largest_shift(contents, brine, paths)
     evidence = evidence_of(library, system)
     verdict, basis = evidence.freezing_class, evidence.basis
     reason, sources = evidence.reason, evidence.sources
@@ -278,19 +276,25 @@ def where_samples_fall(
 
 
 def _largest_shift(
-    paths: tuple[FreezingPath, ...], still: tuple[float | None, ...]
-) -> tuple[float | None, int | None]:
-    """Return the largest difference from the unfrozen liquid and where it is."""
-    best: float | None = None
-    at: int | None = None
-    for path in paths:
-        for i, (point, calm) in enumerate(zip(path.points, still, strict=True)):
-            if point.ph is None or calm is None:
-                continue
-            gap = point.ph - calm
-            if best is None or abs(gap) > abs(best):
-                best, at = gap, i
-    return best, at
+    contents: FreezingContents, brine: Brine, paths: tuple[FreezingPath, ...]
+) -> tuple[float | None, float | None]:
+    """Return the largest difference from the unfrozen liquid, and what that one does.
+
+    The events of a path count too: the last liquid stands at one of them, between the
+    temperatures asked for.
+    """
+    every = [(p.temperature_c, p.ph) for path in paths for p in path.points]
+    every += [(e.temperature_c, e.ph) for path in paths for e in path.events]
+    reached = [(t, ph) for t, ph in every if ph is not None and t <= HIGHEST_C]
+    if not reached:
+        return None, None
+    calm = unfrozen_ph(contents, [t for t, _ in reached], brine=brine)
+    gaps = [
+        (ph - still, still - paths[0].ph_prepared)
+        for (_, ph), still in zip(reached, calm, strict=True)
+        if still is not None
+    ]
+    return max(gaps, key=lambda gap: abs(gap[0]), default=(None, None))
 
 
 def _unlike(
@@ -314,4 +318,5 @@ def _computed_reason(paths: tuple[FreezingPath, ...], shift: float | None) -> st
     if onset is None:
         return "no salt reaches its solubility at the temperatures asked for"
     words = "" if shift is None else f", up to {shift:+.1f} pH against unfrozen liquid"
-    return f"{onset.solid} may crystallise from {onset.temperature_c:.1f} C{words}"
+    solid = onset.solid.replace("_", " ")
+    return f"{solid} may crystallise from {onset.temperature_c:.1f} C{words}"
