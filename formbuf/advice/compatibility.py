@@ -14,6 +14,7 @@ from formbuf.advice.screening import (
     Finding,
     common_findings,
     concerned,
+    counts,
     screen,
     worst_per_topic,
 )
@@ -157,7 +158,9 @@ def with_compatibility(
             for value in [{**c.criteria, "compatibility": criterion}.get(name)]
             if value is not None
         }
-        judged.append(replace(c, criteria=ordered))
+        judged.append(
+            replace(c, criteria=ordered, finding_counts=counts(c.findings))
+        )
     return judged, tuple(shared[key] for key in sorted(shared))
 
 

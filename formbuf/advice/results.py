@@ -178,6 +178,7 @@ class Candidate:
     standing: Standing = "viable"
     tied_with: tuple[str, ...] = ()
     mixture: Mixture | None = field(default=None, repr=False)
+    finding_counts: Mapping[str, int] = field(default_factory=dict)
     confidence: CandidateConfidence | None = field(default=None, repr=False)
 
     @property

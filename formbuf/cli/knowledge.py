@@ -61,10 +61,15 @@ def show_command(
     target = Target(format_, json_, output)
     target.check()
     from formbuf.bench.knowledge_audit import table_schemas
-    from formbuf.output.knowledge_page import table_page, view
+    from formbuf.output.knowledge_page import table_page, view, with_computed
 
     library = open_library(knowledge)
-    emit(table_page(library, view(library, table, table_schemas()), row), target)
+    shown = view(library, table, table_schemas())
+    if shown.name == "species.csv":
+        from formbuf.bench.species_properties import computed_columns
+
+        shown = with_computed(shown, computed_columns(library))
+    emit(table_page(library, shown, row), target)
 
 
 @app.command(

@@ -5,7 +5,7 @@ from __future__ import annotations
 import csv
 import io
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 from formbuf.errors import UnknownNameError
@@ -82,6 +82,25 @@ def view(library: Library, name: str, schemas: Mapping[str, Schema]) -> TableVie
         tuple(_row(row, columns) for row in read),
         sum(row.overlay for row in read),
     )
+
+
+def with_computed(
+    table: TableView, computed: Mapping[str, Mapping[str, Any]]
+) -> TableView:
+    """Return a table with computed columns behind those it holds.
+
+    Parameters
+    ----------
+    table : TableView
+        Keyed by its first column.
+    computed : mapping of key to mapping of column to value
+    """
+    names = tuple(dict.fromkeys(n for row in computed.values() for n in row))
+    rows = tuple(
+        {**row, **dict.fromkeys(names), **computed.get(str(row[table.key[0]]), {})}
+        for row in table.rows
+    )
+    return replace(table, columns=(*table.columns, *names), rows=rows)
 
 
 def _undescribed(library: Library, name: str) -> TableView:

@@ -26,6 +26,7 @@ from formbuf.advice.results import (
     Weighed,
 )
 from formbuf.library import Library
+from formbuf.library.inactive_ingredients import SOURCE_ID
 
 SHORTLIST_SCHEMA = "formbuf.shortlist/1"
 EXPLAIN_SCHEMA = "formbuf.explain/1"
@@ -50,6 +51,7 @@ def header(schema: str, library: Library) -> dict[str, Any]:
             "sha256": library.sha256,
             "overlay": None if overlay is None else str(overlay),
             "overlay_sha256": library.overlay_sha256 or None,
+            "precedent_file": plain(library.precedent_file),
         },
     }
 
@@ -197,6 +199,7 @@ def candidate_dict(candidate: Candidate) -> dict[str, Any]:
         "findings": [finding_dict(f) for f in c.findings],
         "screened_out_by": [screen_dict(s) for s in c.dropped_by],
         "screens_set_aside": [screen_dict(s) for s in c.screens if s.overridden_by],
+        "finding_counts": dict(c.finding_counts),
         "notes": list(c.notes),
         **_confidence(c.confidence),
     }
@@ -317,6 +320,7 @@ def sources_of(result: Shortlist, candidate: Candidate) -> list[str]:
         found += [a.log10_k.source for a in library.species[species].associations]
         row = library.precedents.get((species, result.brief.product.precedent_route))
         found += [row.source] if row is not None else []
+        found += [SOURCE_ID] if row is not None and row.listed else []
     for criterion in candidate.criteria.values():
         found += criterion.sources
     found += [item.source for item in result.loads.items]

@@ -8,7 +8,7 @@ from typing import Any
 from formbuf.advice.criteria_table import CRITERIA
 from formbuf.advice.results import Candidate, LiquidState, Shortlist
 from formbuf.output import serialise, words
-from formbuf.output.confidence_page import confidence_blocks
+from formbuf.output.confidence_page import confidence_blocks, confidence_row
 from formbuf.output.figures import decimals, plainly, significant
 from formbuf.output.page import (
     WIDE,
@@ -61,6 +61,10 @@ def blocks(result: Shortlist, top: int | None = None) -> list[Block]:
     found += _without_buffer(result)
     found += confidence_blocks(result, shown)
     found += section("Composition", words.composition_grid(result, best))
+    found += section(
+        "Rules that fired or stay open, by candidate",
+        _worst([c for c in shown if c.variant_of is None]),
+    )
     found += section("Warnings on the lead and the back-up", _findings(result, best))
     found += section("Findings on the product, whatever the buffer", _common(result))
     found += section("What to find out next", _missing(result))
@@ -143,6 +147,31 @@ def _without_buffer(result: Shortlist) -> list[Block]:
     return [Paragraph(f"Without a buffer: {words.standing_words(arm)}{reason}.")]
 
 
+def _worst(shown: Sequence[Candidate]) -> Grid:
+    """Return the worst finding of each candidate and how many rules came out how."""
+    columns = (
+        Column("System"),
+        number("warn"),
+        number("note"),
+        number("open"),
+        Column("Worst finding of its own"),
+    )
+    rows = []
+    for c in shown:
+        found = c.criteria.get("compatibility")
+        count = c.finding_counts
+        rows.append(
+            (
+                c.name,
+                str(count.get("warn", 0)),
+                str(count.get("note", 0)),
+                str(count.get("not evaluable", 0)),
+                found.text if found is not None else "",
+            )
+        )
+    return Grid(columns, tuple(rows))
+
+
 def _findings(result: Shortlist, candidates: Sequence[Candidate]) -> Grid:
     """Return what warns of the best candidates; notes are left to explain."""
     common = {finding.rule for finding in result.product_findings}
@@ -222,8 +251,11 @@ def records(result: Shortlist, top: int | None = None) -> list[dict[str, Any]]:
     temperatures = sorted(
         {s.temperature_c for c in result.candidates for s in c.states}
     )
+    drawn = result.confidence is not None
     return [
-        _record(c, temperatures) for c in result.candidates if serialise.within(c, top)
+        {**_record(c, temperatures), **(confidence_row(c) if drawn else {})}
+        for c in result.candidates
+        if serialise.within(c, top)
     ]
 
 

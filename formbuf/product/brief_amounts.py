@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from pathlib import Path
 from types import MappingProxyType
 
 from formbuf.product.brief_filler import Filler
-from formbuf.product.brief_model import Brief
+from formbuf.product.brief_model import Brief, Candidate
 from formbuf.product.product_parts import (
     AnchorInfo,
     CandidateInfo,
@@ -14,8 +15,17 @@ from formbuf.product.product_parts import (
     DrugStep,
     ExcipientInfo,
     RankingInfo,
+    TitrationPerGram,
     TitrationReading,
 )
+from formbuf.product.protein_sequence import (
+    Chain,
+    count_groups,
+    molar_mass_of,
+    paired_cysteines,
+    read_sequence,
+)
+from formbuf.product.protein_titration import read_titration
 
 _AMOUNT_UNITS = {
     "mmol_l": "mmol/L",
@@ -47,11 +57,8 @@ def complete_excipients(filler: Filler) -> tuple[ExcipientInfo, ...]:
 def complete_drug(filler: Filler) -> DrugInfo:
     """Return the drug with both concentrations where the molar mass is known."""
     drug = filler.brief.drug
-    mass, amount, molar_mass = (
-        drug.concentration_mg_ml,
-        drug.concentration_mmol_l,
-        drug.molar_mass_g_mol,
-    )
+    mass, amount = drug.concentration_mg_ml, drug.concentration_mmol_l
+    residues, molar_mass = _protein(filler)
     if molar_mass is not None and mass is not None:
         amount = mass / molar_mass * 1000.0
     elif molar_mass is not None and amount is not None:
@@ -78,7 +85,49 @@ def complete_drug(filler: Filler) -> DrugInfo:
         titration=tuple(
             TitrationReading(point.ph, point.base_mmol_l) for point in drug.titration
         ),
+        net_charge=drug.net_charge,
+        net_charge_ph=drug.net_charge_ph,
+        residues=MappingProxyType(residues),
+        titration_mmol_g=_titration_file(filler),
     )
+
+
+def _protein(filler: Filler) -> tuple[dict[str, float], float | None]:
+    """Return the groups of a protein and the molar mass, from its chains if given."""
+    drug, origin = filler.brief.drug, filler.brief.origin
+    if not drug.chain:
+        return dict(drug.residues), drug.molar_mass_g_mol
+    chains = [
+        Chain(
+            read_sequence(
+                row.sequence, where=origin.where(("drug", "chain", index, "sequence"))
+            ),
+            row.copies,
+        )
+        for index, row in enumerate(drug.chain)
+    ]
+    bonds = drug.disulfides
+    if bonds is None:
+        bonds = paired_cysteines(chains)
+        reason = "every cysteine with a partner, an odd one free"
+        filler.assume("drug.disulfides", float(bonds), "", "judgement", reason)
+    groups = count_groups(chains, bonds, where=origin.where(("drug", "disulfides")))
+    molar_mass = drug.molar_mass_g_mol
+    if molar_mass is None:
+        molar_mass = round(molar_mass_of(chains, bonds), 1)
+        reason = "from the sequence; glycans are left out"
+        filler.assume("drug.molar_mass_g_mol", molar_mass, "g/mol", "derived", reason)
+    return groups, molar_mass
+
+
+def _titration_file(filler: Filler) -> tuple[TitrationPerGram, ...]:
+    name = filler.brief.drug.titration_file
+    if name is None:
+        return ()
+    origin = filler.brief.origin
+    path = Path(origin.name).parent / name
+    readings = read_titration(path, where=origin.where(("drug", "titration_file")))
+    return tuple(TitrationPerGram(ph, mmol_g) for ph, mmol_g in readings)
 
 
 def complete_candidates(filler: Filler) -> tuple[CandidateInfo, ...]:
@@ -91,9 +140,14 @@ def complete_candidates(filler: Filler) -> tuple[CandidateInfo, ...]:
             amounts[found.id] = amounts.get(found.id, 0.0) + mmol_l
         return MappingProxyType(amounts)
 
+    def named(row: Candidate) -> str:
+        known = filler.library.systems.get(row.system or "")
+        what = known.name if known is not None else row.system or ""
+        return row.name or f"{what}, {row.concentration_mmol_l or 0:g} mmol/L"
+
     return tuple(
         CandidateInfo(
-            name=row.name or f"{row.system} {row.concentration_mmol_l or 0:g} mmol/L",
+            name=named(row),
             system=row.system,
             concentration_mmol_l=row.concentration_mmol_l,
             materials=materials(row.materials),
