@@ -143,6 +143,7 @@ def judge_product(
         judged = {**judged, "frozen_drift": frozen.criterion(case, frost)}
     elif said := frozen.warm_note(case, system):
         notes.append(said)
+    notes += frozen.drying_notes(case, product)
     numbers = quantities_of(
         case, system, product, frost.counted_class if frost else None
     )
@@ -242,7 +243,7 @@ def _screens(
     """Apply the computed screens; what they could not judge becomes a note."""
     library, brief, settings = case.library, case.brief, case.settings
     fired = screens.precedent_screens(found, brief)
-    notes = screens.novelty_notes(found)
+    notes = [*screens.novelty_notes(found), *precedent.listed_notes(found)]
     fired += screens.exclusion_screens(library, system, brief.exclude)
     if not own_name:
         ceiling, said = screens.ceiling_screen(

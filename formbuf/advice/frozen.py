@@ -17,6 +17,7 @@ from formbuf.product.freezing_assess import (
     freezing_contents,
 )
 from formbuf.product.freezing_data import observations
+from formbuf.product.quantities import VOLATILE
 from formbuf.product.vocabulary import AMORPHOUS_SUGARS
 
 #: Shelf temperature at which a product is taken to freeze before drying [C].
@@ -24,6 +25,8 @@ FREEZE_DRYING_C = -40.0
 #: From the mildest to the worst; an amorphous sugar eases by one step.
 STEPS = ("negligible", "moderate", "severe")
 SUGAR_PERCENT = 5.0
+#: Uncharged share from which a volatile species is flagged on drying.
+VOLATILE_SHARE = 0.01
 
 
 @dataclass(frozen=True, slots=True)
@@ -141,6 +144,27 @@ def freeze_to(
             )
             counted = eased
     return Frozen(found, counted, "; ".join(remarks), sugar)
+
+
+def drying_notes(case: Case, product: Product) -> list[str]:
+    """Name volatile species whose uncharged share goes with the water on drying.
+
+    Above about 1 % uncharged at the product's pH a species is flagged (`judgement`);
+    how much leaves is not predicted, for want of data.
+    """
+    if not case.brief.is_dried:
+        return []
+    notes = []
+    for name in VOLATILE:
+        rows = [r for r in product.species_states if r.component == name]
+        total = sum(r.mmol_l for r in rows)
+        share = sum(r.mmol_l for r in rows if r.charge == 0) / total if total else 0.0
+        if share > VOLATILE_SHARE:
+            notes.append(
+                f"{100.0 * share:.0f} % of the {name} is uncharged at this pH and "
+                "volatile: some leaves on drying, and the pH after reconstitution moves"
+            )
+    return notes
 
 
 def _unassessed(case: Case, system: System, why: str) -> FreezingAssessment:

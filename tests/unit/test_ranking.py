@@ -264,3 +264,21 @@ def test_the_table_is_a_data_frame_with_units():
     table = result.table
     assert len(table) == len(result.candidates)
     assert "concentration_mmol_l" in table.columns
+
+
+def test_volatile_buffers_are_flagged_on_drying_by_their_uncharged_share():
+    """Acetate at pH 5 is a third acetic acid: it leaves on drying (`practice`)."""
+    dried = run(
+        product={"route": "intravenous", "form": "dried"},
+        ph={"target": 5.0},
+        storage=[],
+        drug={"kind": "small_molecule"},
+    )
+    liquid = run(ph={"target": 5.0})
+
+    def said(result):
+        notes = result.candidate("sodium_acetate").notes
+        return any("volatile" in note for note in notes)
+
+    assert said(dried)
+    assert not said(liquid)
