@@ -6,6 +6,7 @@ from collections.abc import Sequence
 
 from formbuf.advice.case import Case
 from formbuf.advice.results import Candidate
+from formbuf.library import Library
 
 
 def listed(names: Sequence[str]) -> str:
@@ -43,7 +44,7 @@ def verdict(candidates: Sequence[Candidate]) -> str:
 
 def warnings_of(case: Case, candidates: Sequence[Candidate]) -> tuple[str, ...]:
     """Return what a reader must know about the result as a whole."""
-    found = []
+    found = precedent_file_warnings(case.library)
     if case.loads.all_default:
         found.append(
             "no acid or base load was stated: concentrations rest on default loads"
@@ -58,3 +59,18 @@ def warnings_of(case: Case, candidates: Sequence[Candidate]) -> tuple[str, ...]:
                 f"{high:.0f}"
             )
     return tuple(found)
+
+
+def precedent_file_warnings(library: Library) -> list[str]:
+    """Say what came of a list of inactive ingredients that the user gave."""
+    listed = library.precedent_file
+    if listed is None:
+        return []
+    text = (
+        f"{listed.path}: {listed.matched} of {listed.rows} rows are materials of ours, "
+        f"{listed.unmatched} are not; {listed.replaced} precedents rest on the file"
+    )
+    if listed.unused:
+        reasons = ", ".join(f"{count} {why}" for why, count in listed.unused.items())
+        text += f"; matched but not used: {reasons}"
+    return [text]

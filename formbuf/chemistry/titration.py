@@ -28,6 +28,9 @@ Array = NDArray[np.float64]
 ITERATION_CAP = 100
 #: Relative step of the root of ionic strength at which the amount counts as settled.
 TOLERANCE = 1e-10
+#: Share of the squared charges below which their sum is rounding: where titrant is
+#: taken away until hardly an ion is left, the ionic strength is a small difference.
+ROUNDING = 1e-14
 #: Charge per mole of titrant below which it moves nothing.
 LEAST_CHARGE = 1e-9
 
@@ -139,7 +142,8 @@ def titrant_for_ph(
         d_slope = (LN10 * batch.a_slope) / (denominator * denominator)
         gap = root * root - 0.5 * double_ionic
         step = gap / np.maximum(2.0 * root - 0.5 * d_slope * d_double, 0.2 * root)
-        if not np.any(np.abs(step) > TOLERANCE * (0.05 + root)):
+        moves = np.abs(step) > TOLERANCE * (0.05 + root)
+        if not np.any(moves & (np.abs(gap) > ROUNDING * at.double_ionic)):
             columns = [part.charge for part in at.sums]
             charges = (
                 np.stack(columns, axis=-1) if columns else np.zeros((batch.size, 0))

@@ -29,7 +29,7 @@ COMMANDS: Mapping[str, Entry] = {
     "challenge": Entry("formbuf.cli.challenge", "Show pH under acid and base."),
     "dilute": Entry("formbuf.cli.dilute", "Show a product in an infusion fluid."),
     "retentate": Entry("formbuf.cli.retentate", "Show a protein after diafiltration."),
-    "brief": Entry("formbuf.cli.brief", "Check a brief, or print its schema."),
+    "brief": Entry("formbuf.cli.brief", "Write, check or describe a brief."),
     "knowledge": Entry("formbuf.cli.knowledge", "Look into the tables and audit them."),
     "qualify": Entry("formbuf.cli.qualify", "Qualify this installation."),
 }

@@ -12,6 +12,7 @@ from formbuf.cli.options import (
     JsonOption,
     KnowledgeOption,
     OutputOption,
+    PrecedentOption,
     open_library,
 )
 
@@ -73,6 +74,7 @@ def shortlist_command(
         typer.Option(metavar="SEED", help="Start of the draws, a whole number."),
     ] = None,
     knowledge: KnowledgeOption = None,
+    precedent: PrecedentOption = None,
     format_: FormatOption = None,
     json_: JsonOption = False,
     output: OutputOption = None,
@@ -107,7 +109,7 @@ def shortlist_command(
     from formbuf.errors import EXIT_NO_CANDIDATE
     from formbuf.output.shortlist_page import shortlist_page
 
-    result = shortlist(read, open_library(knowledge))
+    result = shortlist(read, open_library(knowledge, precedent))
     if count is not None:
         from formbuf.advice.confidence import with_confidence
 

@@ -196,46 +196,57 @@ def _changes(result: Shortlist, found: Confidence) -> Items:
     return Items(tuple(texts))
 
 
+def confidence_row(c: Candidate) -> dict[str, Any]:
+    """Return what draws tell of a candidate as flat columns, units in their names.
+
+    Parameters
+    ----------
+    c : Candidate
+        Every column is empty where it was not drawn.
+    """
+    k = c.confidence
+    row: dict[str, Any] = {}
+    for name in ("ranks", "ranks_around", "ranks_any"):
+        ranks = getattr(k, name, None)
+        column = {"ranks": "", "ranks_around": "_near_weights"}.get(
+            name, "_any_weights"
+        )
+        row[f"lead_chance{column}"] = ranks.lead.value if ranks else None
+        row[f"lead_chance{column}_standard_error"] = (
+            ranks.lead.standard_error if ranks else None
+        )
+        row[f"expected_loss{column}"] = ranks.expected_loss if ranks else None
+    for name in ("within_at_release", "within_at_end", "carries_loads", "over_head"):
+        one = getattr(k, name, None)
+        row[f"{name}_chance"] = one.value if one else None
+        row[f"{name}_standard_error"] = one.standard_error if one else None
+    for name in (
+        "read_ph",
+        "required_mmol_l",
+        "capacity_mmol_l_ph",
+        "osmolality_mosm_kg",
+    ):
+        span = getattr(k, name, None)
+        row[f"{name}_low_95"] = span.low_95 if span else None
+        row[f"{name}_high_95"] = span.high_95 if span else None
+    return row
+
+
 def confidence_rows(result: Shortlist) -> list[dict[str, Any]]:
-    """Return one flat row per candidate that was drawn, units in the names.
+    """Return one flat row per candidate that was drawn, pH by temperature included.
 
     Parameters
     ----------
     result : Shortlist
         With draws; an empty list without.
     """
-    if result.confidence is None:
-        return []
-    return [
-        _row(c, c.confidence) for c in result.candidates if c.confidence is not None
-    ]
-
-
-def _row(c: Candidate, k: CandidateConfidence) -> dict[str, Any]:
-    row: dict[str, Any] = {"system": c.key, "rank": c.rank}
-    for name, ranks in (
-        ("lead_chance", k.ranks),
-        ("lead_chance_weights_near", k.ranks_around),
-        ("lead_chance_any_weights", k.ranks_any),
-    ):
-        row[name] = ranks.lead.value if ranks else None
-    row["expected_loss"] = k.ranks.expected_loss if k.ranks else None
-    for name, one in (
-        ("within_at_release", k.within_at_release),
-        ("within_at_end", k.within_at_end),
-        ("carries_loads", k.carries_loads),
-    ):
-        row[f"{name}_chance"] = one.value if one else None
-        row[f"{name}_standard_error"] = one.standard_error if one else None
-    for name, span in (
-        ("read_ph", k.read_ph),
-        ("required_mmol_l", k.required_mmol_l),
-        ("capacity_mmol_l_ph", k.capacity_mmol_l_ph),
-        ("osmolality_mosm_kg", k.osmolality_mosm_kg),
-    ):
-        row[f"{name}_low_95"] = span.low_95 if span else None
-        row[f"{name}_high_95"] = span.high_95 if span else None
-    for t in k.temperatures:
-        row[f"ph_low_95_at_{t.temperature_c:g}_c"] = t.ph.low_95
-        row[f"ph_high_95_at_{t.temperature_c:g}_c"] = t.ph.high_95
-    return row
+    rows = []
+    for c in result.candidates:
+        if c.confidence is None:
+            continue
+        row = {"system": c.key, "rank": c.rank, **confidence_row(c)}
+        for t in c.confidence.temperatures:
+            row[f"ph_low_95_at_{t.temperature_c:g}_c"] = t.ph.low_95
+            row[f"ph_high_95_at_{t.temperature_c:g}_c"] = t.ph.high_95
+        rows.append(row)
+    return rows

@@ -126,7 +126,9 @@ def _lines(axes: Axes, chart: DecisionMap) -> None:
     axes.spines[["top", "right"]].set_visible(False)
     axes.set_axisbelow(True)
     if shown:
-        axes.legend(loc="lower left", frameon=False, fontsize=8)
+        axes.figure.legend(
+            loc="outside lower center", ncols=3, frameon=False, fontsize=8
+        )
 
 
 def _cycled(count: int) -> list[tuple[str, Any]]:

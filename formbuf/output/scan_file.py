@@ -9,8 +9,7 @@ from __future__ import annotations
 
 import hashlib
 import json
-import sys
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from pathlib import Path
 from types import TracebackType
 from typing import Any, BinaryIO
@@ -34,16 +33,18 @@ def mark_of(what: Mapping[str, Any]) -> str:
 
 
 class ScanFile:
-    """A CSV file that grows by points, or standard output.
+    """A CSV file that grows by points, or a stream of text.
 
     Parameters
     ----------
     path : Path or None
-        None writes to standard output, which cannot be gone on with.
+        None hands every text to ``put`` instead, which cannot be gone on with.
     columns : sequence of str
         Without the mark and the point.
     mark : str
         Of the scan.
+    put : callable
+        Takes text where there is no file.
 
     Raises
     ------
@@ -51,8 +52,15 @@ class ScanFile:
         The file holds something else, or cannot be written.
     """
 
-    def __init__(self, path: Path | None, columns: Sequence[str], mark: str) -> None:
+    def __init__(
+        self,
+        path: Path | None,
+        columns: Sequence[str],
+        mark: str,
+        put: Callable[[str], None],
+    ) -> None:
         self.path = path
+        self._put = put
         self.mark = mark
         self.columns = tuple(columns)
         #: Point to begin with; above 0 where an earlier run is gone on with.
@@ -117,8 +125,7 @@ class ScanFile:
 
     def _write(self, text: str) -> None:
         if self.path is None:
-            sys.stdout.write(text)
-            sys.stdout.flush()
+            self._put(text)
             return
         if self._stream is not None:
             try:

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import io
 import os
+import textwrap
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, TextIO
 
@@ -152,6 +153,11 @@ def _least(grid: Grid, index: int, room: int) -> int:
     if not column.keep:
         longest = min(longest, LONGEST_WORD)
     return max(longest, *(cell_len(h) for h in _header(column, room).split("\n")))
+
+
+def wrapped(text: str, width: int) -> list[str]:
+    """Return a text as lines of at most a width [characters], at least one line."""
+    return textwrap.wrap(printable(text), width) or [""]
 
 
 def printable(text: str) -> str:

@@ -113,6 +113,7 @@ def complete(brief: Brief, library: Library) -> Completed:
             for row in brief.override
         ),
         facts=MappingProxyType(dict(brief.facts)),
+        uncertainty=brief.uncertainty.info(),
     )
     return Completed(
         brief=product,

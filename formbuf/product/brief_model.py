@@ -26,11 +26,13 @@ from formbuf.product.brief_tables import (
     Ph,
     Product,
     Storage,
+    SystemName,
     Table,
     Text,
     Tonicity,
     fail,
 )
+from formbuf.product.brief_uncertainty import Uncertainty
 from formbuf.product.vocabulary import (
     AGE_BANDS,
     STRONG_ELECTROLYTES,
@@ -69,8 +71,9 @@ class Candidate(Table):
     """A formula of the user's own, judged as it is: a system, or materials."""
 
     name: Text | None = Field(default=None, description="Name shown in results")
-    system: Id | None = Field(
-        default=None, description="Buffer system, set to the target pH"
+    system: SystemName | None = Field(
+        default=None,
+        description="Buffer system, or two species with a plus, set to the target pH",
     )
     concentration_mmol_l: Number | None = Field(
         default=None, gt=0, le=2000, description="Total buffer concentration, mmol/L"
@@ -282,16 +285,17 @@ class Brief(Table):
         max_length=60,
         description="Species, systems or ions never to propose",
     )
-    require: tuple[Id, ...] = Field(
+    require: tuple[SystemName, ...] = Field(
         default=(),
         max_length=60,
-        description="Species or systems that must be among them",
+        description="Species, systems or pairs that must be among them",
     )
     consider_roles: tuple[Role, ...] = Field(
         default=(), max_length=6, description="Further roles of systems to consider"
     )
     candidate: tuple[Candidate, ...] = Field(default=(), max_length=20)
     ranking: Ranking = Field(default_factory=Ranking)
+    uncertainty: Uncertainty = Field(default_factory=Uncertainty)
     species: tuple[OwnSpecies, ...] = Field(default=(), max_length=30)
     material: tuple[OwnMaterial, ...] = Field(default=(), max_length=60)
     system: tuple[OwnSystem, ...] = Field(default=(), max_length=30)

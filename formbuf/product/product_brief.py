@@ -9,7 +9,7 @@ from __future__ import annotations
 import dataclasses
 import datetime as dt
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Any
 
 from formbuf.product.product_parts import (
@@ -28,6 +28,7 @@ from formbuf.product.product_parts import (
     StorageInfo,
     TonicityInfo,
 )
+from formbuf.product.uncertainty_parts import UncertaintyInfo
 from formbuf.product.vocabulary import Role, RouteGroup, State, StorageKind
 
 #: From this dose volume on an intravenous product counts as large volume, mL.
@@ -56,6 +57,7 @@ class ProductBrief:
     ranking: RankingInfo
     override: tuple[OverrideInfo, ...]
     facts: Mapping[str, Any]
+    uncertainty: UncertaintyInfo = field(default_factory=UncertaintyInfo)
 
     @property
     def route_group(self) -> RouteGroup:

@@ -28,7 +28,6 @@ COMPUTING = {
     "jinja2",
     "docx",
     "openpyxl",
-    "rich.table",
 }
 
 
