@@ -158,9 +158,7 @@ def with_compatibility(
             for value in [{**c.criteria, "compatibility": criterion}.get(name)]
             if value is not None
         }
-        judged.append(
-            replace(c, criteria=ordered, finding_counts=counts(c.findings))
-        )
+        judged.append(replace(c, criteria=ordered, finding_counts=counts(c.findings)))
     return judged, tuple(shared[key] for key in sorted(shared))
 
 

@@ -20,8 +20,12 @@ def capacity(
     ceiling_mmol_l: float,
     relative_deviation: float,
     settings: Settings,
+    sources: tuple[str, ...] = (),
 ) -> CriterionResult:
-    """Judge the required concentration, on a log scale up to the ceiling."""
+    """Judge the required concentration, on a log scale up to the ceiling.
+
+    ``sources`` name where the ceiling comes from, if it is a file of the user.
+    """
     anchors = settings.anchors["capacity"]
     floor = anchors.floor if anchors.floor is not None else ceiling_mmol_l
     floor = max(floor, anchors.full * 1.0001)
@@ -32,11 +36,14 @@ def capacity(
         if required_mmol_l is None
         else f"{required_mmol_l:.3g}"
     )
+    listed = ", as the file of the user lists it" if sources else ""
     return CriterionResult(
         value,
         anchors.unit,
         d,
-        f"carrying the loads takes {shown} mmol/L; the ceiling is {floor:.3g} mmol/L",
+        f"carrying the loads takes {shown} mmol/L; the ceiling is {floor:.3g} mmol/L"
+        f"{listed}",
+        sources=sources,
         deviation_ln=deviation_ln(
             value, value * relative_deviation, anchors, floor, settings.floor_value
         ),

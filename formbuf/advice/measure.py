@@ -36,6 +36,7 @@ def judge_criteria(
             ceiling_mmol_l,
             settings.number("uncertainty", "load_relative"),
             settings,
+            precedent.listed_sources(found),
         )
     }
     drift = _drift(case, system, product, amounts)

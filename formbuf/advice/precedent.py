@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 from formbuf.advice.criteria_table import Settings
 from formbuf.library import Library
+from formbuf.library.inactive_ingredients import SOURCE_ID
 from formbuf.library.records import KindPrecedent, Precedent, System
 from formbuf.product.product_brief import ProductBrief
 
@@ -82,7 +83,8 @@ def ceiling_mmol_l(
     """Largest nominal concentration that every species of the system bears.
 
     Each species is held against its own ceiling. Above the reference volume the
-    ceiling holds as an amount per dose.
+    ceiling holds as an amount per dose; a largest daily amount, where a file of the
+    user lists one, is never passed.
     """
     fallback = float(settings.table["anchors"]["capacity"]["fallback_ceiling"])
     ceilings = [
@@ -99,7 +101,27 @@ def ceiling_mmol_l(
     reference = settings.number("sizing", "dose_reference_ml")
     if brief.is_parenteral and brief.dose.volume_ml > reference:
         ceiling *= reference / brief.dose.volume_ml
-    return ceiling
+    litres_day = brief.dose.volume_ml * brief.dose.per_day / 1000.0
+    daily = [
+        s.row.daily_mmol / litres_day / s.share
+        for s in found
+        if s.row is not None and s.row.daily_mmol is not None and s.share > 1e-9
+    ]
+    return min([ceiling, *daily])
+
+
+def listed_notes(found: tuple[SpeciesStanding, ...]) -> list[str]:
+    """Say what a list of inactive ingredients of the user changed for the species."""
+    return [f"by the file of the user, {text}" for s in found if (text := _listed(s))]
+
+
+def listed_sources(found: tuple[SpeciesStanding, ...]) -> tuple[str, ...]:
+    """Return the source of a ceiling that comes from such a list; else empty."""
+    return (SOURCE_ID,) if any(_listed(s) for s in found) else ()
+
+
+def _listed(standing: SpeciesStanding) -> str:
+    return "" if standing.row is None else standing.row.listed
 
 
 @dataclass(frozen=True, slots=True)

@@ -91,10 +91,11 @@ def curve_through(ph: ArrayLike, charge: ArrayLike) -> ChargeCurve:
     if x.size < 2 or x.shape != y.shape:
         msg = "a curve needs two points or more, as many charges as pH values"
         raise ValueError(msg)
-    h, secant = np.diff(x), np.diff(y) / np.diff(x)
-    if not (np.all(h > 0.0) and np.all(secant <= 0.0)):
+    h = np.diff(x)
+    if not (np.all(h > 0.0) and np.all(np.diff(y) <= 0.0)):
         msg = "a curve needs rising pH and falling charge"
         raise ValueError(msg)
+    secant = np.diff(y) / h
     slope = np.empty_like(x)
     slope[0], slope[-1] = _end_slope(h, secant), _end_slope(h[::-1], secant[::-1])
     before, after = secant[:-1], secant[1:]

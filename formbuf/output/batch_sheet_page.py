@@ -44,8 +44,12 @@ def batch_sheet_page(sheet: BatchSheet) -> Page:
 
 def batch_sheet_dict(sheet: BatchSheet) -> dict[str, Any]:
     """Return a batch sheet as plain data."""
+    return {**head(BATCH_SHEET_SCHEMA, sheet.bench), **sheet_dict(sheet)}
+
+
+def sheet_dict(sheet: BatchSheet) -> dict[str, Any]:
+    """Return what a batch sheet adds to its inputs, as plain data."""
     return {
-        **head(BATCH_SHEET_SCHEMA, sheet.bench),
         "batch_l": sheet.batch_l,
         "batch_kg": sheet.batch_kg,
         "target_temperature_c": sheet.target_temperature_c,

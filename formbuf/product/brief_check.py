@@ -81,12 +81,26 @@ def _unknown(location: Location, kind: str, name: str, known: Collection[str]) -
 
 def _unknown_system(location: Location, name: str, library: Library) -> Fault:
     """Return the fault for a system; a species given instead gets its systems."""
+    if "+" in name:
+        return _no_pair(location, name, library)
     fault = _unknown(location, "system", name, library.systems)
     made_of = [row.id for row in library.systems.values() if name in row.species]
     if not made_of:
         return fault
     hint = f"{name!r} is a species; its systems are {', '.join(made_of)}."
     return dataclasses.replace(fault, hint=hint)
+
+
+def _no_pair(location: Location, name: str, library: Library) -> Fault:
+    """Return the fault for two names with a plus that make no system."""
+    from formbuf.product.pairs import pair_system
+
+    try:
+        pair_system(library, name, where="")
+    except InputError as error:
+        what, _, allowed = error.message.removeprefix(": ").partition(", allowed ")
+        return Fault(location, what, allowed or "two species", name, error.hint)
+    return Fault(location, "makes no system", "two species", name)
 
 
 _TABLES = {
@@ -132,6 +146,8 @@ def _list_faults(brief: Brief, library: Library) -> Iterator[Fault]:
         if name in STRONG_ELECTROLYTES:
             what = STRONG_IS_NO_BUFFER
             yield Fault(("require", index), what, "a species or system", name)
+        elif name not in required and "+" in name:
+            yield _no_pair(("require", index), name, library)
         elif name not in required:
             yield _unknown(("require", index), "species or system", name, required)
 
@@ -159,7 +175,7 @@ def _find(text: str, location: Location, library: Library) -> Material | Fault:
         material = library.find_material(text)
     except UnknownNameError:
         hint = suggest(text, sorted(library.materials)) or (
-            "See `formbuf knowledge list materials`, or describe it as [[material]]."
+            "See `formbuf knowledge show materials`, or describe it as [[material]]."
         )
         return Fault(location, "unknown material", "id, formula or name", text, hint)
     except InputError as error:

@@ -3,12 +3,16 @@
 from __future__ import annotations
 
 import itertools
+from typing import Annotated
 
 from pydantic import Field
 
 from formbuf.product.brief_origin import Location
 from formbuf.product.brief_tables import Id, Number, Table, Text, Whole
-from formbuf.product.vocabulary import DrugKind
+from formbuf.product.vocabulary import PROTEIN_GROUPS, DrugKind
+
+Count = Annotated[Number, Field(ge=0, le=100_000)]
+Residues = Annotated[str, Field(strict=True, min_length=1, max_length=50_000)]
 
 
 class Pka(Table):
@@ -53,6 +57,15 @@ def ladder_faults(key: str, steps: tuple[Pka, ...]) -> list[tuple[Location, str,
     return []
 
 
+class ProteinChain(Table):
+    """One polypeptide chain of the drug, in one-letter codes."""
+
+    sequence: Residues = Field(description="Sequence in one-letter codes")
+    copies: Whole = Field(
+        default=1, ge=1, le=1000, description="How often the molecule holds the chain"
+    )
+
+
 class Drug(Table):
     """The drug: how much, and what of it binds protons."""
 
@@ -73,6 +86,26 @@ class Drug(Table):
     isoelectric_point: Number | None = Field(
         default=None, ge=0, le=14, description="Isoelectric point"
     )
+    net_charge: Number | None = Field(
+        default=None,
+        ge=-10000,
+        le=10000,
+        description="Net charge per molecule at net_charge_ph",
+    )
+    net_charge_ph: Number | None = Field(
+        default=None, ge=0, le=14, description="pH of the net charge"
+    )
+    chain: tuple[ProteinChain, ...] = Field(
+        default=(), max_length=60, description="Polypeptide chains of a protein"
+    )
+    residues: dict[Id, Count] = Field(
+        default_factory=dict,
+        max_length=20,
+        description="Ionisable group of a protein = count per molecule",
+    )
+    disulfides: Whole | None = Field(
+        default=None, ge=0, le=10000, description="Disulfide bonds per molecule"
+    )
     counter_ion: Id | None = Field(
         default=None, description="Ion or species of the drug salt"
     )
@@ -87,6 +120,10 @@ class Drug(Table):
     )
     titration: tuple[TitrationPoint, ...] = Field(
         default=(), max_length=500, description="Measured titration without buffer"
+    )
+    titration_file: Text | None = Field(
+        default=None,
+        description="CSV of a titration of the protein: ph, mmol_g (base per gram)",
     )
 
     def faults(self) -> list[tuple[Location, str, str]]:
@@ -103,10 +140,50 @@ class Drug(Table):
         if self.counter_ion_per_mole is not None and self.counter_ion is None:
             what = "is given without drug.counter_ion"
             found.append((("counter_ion_per_mole",), what, "both or neither"))
-        return found + self._titration_faults()
+        return found + self._protein_faults() + self._titration_faults()
+
+    def _protein_faults(self) -> list[tuple[Location, str, str]]:
+        """Check the descriptions of a protein against each other."""
+        found: list[tuple[Location, str, str]] = []
+        if (self.net_charge is None) != (self.net_charge_ph is None):
+            given = "net_charge" if self.net_charge is not None else "net_charge_ph"
+            other = "net_charge_ph" if given == "net_charge" else "net_charge"
+            found.append(((given,), f"is given without {other}", "both or neither"))
+        elif self.net_charge is not None and self.isoelectric_point is None:
+            what = "is given without isoelectric_point, which a line of charge needs"
+            found.append((("net_charge",), what, "both or neither"))
+        if self.chain and self.residues:
+            found.append((("residues",), "are given beside chain", "one of the two"))
+        if self.disulfides is not None and not self.chain:
+            what = "is given without [[drug.chain]]; count free cysteine in residues"
+            found.append((("disulfides",), what, "only with chain"))
+        for name in self.residues:
+            if name not in PROTEIN_GROUPS:
+                known = ", ".join(PROTEIN_GROUPS)
+                found.append((("residues", name), "is no group known here", known))
+        described = "chain" if self.chain else "residues" if self.residues else ""
+        if described and self.pka:
+            found.append(((described,), "is given beside pka", "one of the two"))
+        return found + self._amount_faults(described)
+
+    def _amount_faults(self, described: str) -> list[tuple[Location, str, str]]:
+        """Check that charges per molecule come with moles; chains bring their own."""
+        counts = "residues" if self.residues else ""
+        counts = counts or ("net_charge" if self.net_charge is not None else "")
+        mass = self.concentration_mg_ml
+        if counts and mass and self.molar_mass_g_mol is None and described != "chain":
+            what = f"is missing: {counts} counts moles, the brief gives mg/mL"
+            return [(("molar_mass_g_mol",), what, "a molar mass, g/mol")]
+        return []
 
     def _titration_faults(self) -> list[tuple[Location, str, str]]:
         points = self.titration
+        if points and self.titration_file is not None:
+            what = "is given beside [[drug.titration]]"
+            return [(("titration_file",), what, "one of the two")]
+        if points and self.pka:
+            what = "is given beside pka, which describes the same protons"
+            return [(("titration",), what, "one of the two")]
         if len(points) == 1:
             return [(("titration",), "holds one point", "two points or more")]
         for index, (before, after) in enumerate(itertools.pairwise(points)):

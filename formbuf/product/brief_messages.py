@@ -7,7 +7,6 @@ brief are told at once, in the order of the file, one per line.
 from __future__ import annotations
 
 import dataclasses
-import difflib
 import functools
 import typing
 from collections.abc import Iterable, Mapping, Sequence
@@ -16,7 +15,7 @@ from typing import Any
 
 from pydantic import BaseModel, ValidationError
 
-from formbuf.errors import InputError
+from formbuf.errors import InputError, nearest
 from formbuf.product.brief_model import Brief
 from formbuf.product.brief_origin import Location, Origin, key_path
 from formbuf.product.vocabulary import MEANT
@@ -90,7 +89,7 @@ def meant(name: str, known: Sequence[str]) -> str:
         return plain
     if MEANT.get(plain) in known:
         return MEANT[plain]
-    close = difflib.get_close_matches(plain, known, n=1, cutoff=0.6)
+    close = nearest(plain, known, 1)
     return close[0] if close else ""
 
 

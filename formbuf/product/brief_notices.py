@@ -12,7 +12,7 @@ def notices(brief: ProductBrief, library: Library) -> tuple[str, ...]:
     """Return one sentence for each thing a reader of the results should know."""
     return (
         *_route_notices(brief, library),
-        *_drug_notices(brief),
+        *_drug_notices(brief, library),
         *_storage_notices(brief),
         *_overlay_notices(library),
     )
@@ -40,7 +40,7 @@ def _route_notices(brief: ProductBrief, library: Library) -> Iterator[str]:
         )
 
 
-def _drug_notices(brief: ProductBrief) -> Iterator[str]:
+def _drug_notices(brief: ProductBrief, library: Library) -> Iterator[str]:
     drug = brief.drug
     if drug.pka and drug.concentration_mmol_l is None:
         yield (
@@ -52,11 +52,14 @@ def _drug_notices(brief: ProductBrief) -> Iterator[str]:
             "drug.counter_ion is given without a concentration: it is left out of "
             "account"
         )
-    if drug.is_protein and not drug.titration and not drug.pka:
+    if drug.is_protein and drug.charge_known_from is None:
         yield (
             "what the protein itself buffers is not known: give a measured titration "
-            "([[drug.titration]]) to have it counted"
+            "(drug.titration_file or [[drug.titration]]), its chains or residues, or a "
+            "net charge, with its concentration, to have it counted"
         )
+    if drug.charge_known_from not in {None, "pka"}:
+        yield from _charge_notices(brief, library)
     if drug.titration:
         first, last = drug.titration[0].ph, drug.titration[-1].ph
         if first > brief.ph.low or last < brief.ph.high:
@@ -64,6 +67,15 @@ def _drug_notices(brief: ProductBrief) -> Iterator[str]:
                 f"the titration reaches from pH {first:g} to {last:g} and does not "
                 f"cover the window {brief.ph.low:g} to {brief.ph.high:g}"
             )
+
+
+def _charge_notices(brief: ProductBrief, library: Library) -> tuple[str, ...]:
+    # read only where needed: reading a brief does without the arrays of the chemistry
+    from formbuf.product.background import drug_extra
+    from formbuf.product.drug_charge import charge_notes
+
+    extra = drug_extra(library, brief)
+    return charge_notes(brief.drug, extra.ions_mmol_l if extra is not None else {})
 
 
 def _storage_notices(brief: ProductBrief) -> Iterator[str]:

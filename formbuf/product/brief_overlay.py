@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+import contextlib
 import dataclasses
-from collections.abc import Mapping
+from collections.abc import Collection, Mapping
 from types import MappingProxyType
 from typing import TypeVar
 
+from formbuf.errors import InputError
 from formbuf.library import Library
 from formbuf.library.records import (
     IonizationStep,
@@ -34,7 +36,9 @@ def lay_over(brief: Brief, library: Library, pka_uncertainty: float) -> Library:
     pka_uncertainty : float
         Standard uncertainty of an in-house pK where the brief states none.
     """
-    if not (brief.species or brief.material or brief.system):
+    named = [row.system for row in brief.candidate if row.system is not None]
+    pairs = [name for name in (*named, *brief.require) if "+" in name]
+    if not (brief.species or brief.material or brief.system or pairs):
         return library
     sources: dict[str, Source] = {}
     species = {
@@ -50,7 +54,7 @@ def lay_over(brief: Brief, library: Library, pka_uncertainty: float) -> Library:
         if row.id in row.contents
     }
     systems = {row.id: _system(row) for row in brief.system}
-    return dataclasses.replace(
+    wide = dataclasses.replace(
         library,
         species=_merged(library.species, species),
         materials=_merged(library.materials, materials),
@@ -58,6 +62,21 @@ def lay_over(brief: Brief, library: Library, pka_uncertainty: float) -> Library:
         systems=_merged(library.systems, systems),
         sources=_merged(library.sources, sources),
     )
+    return with_pairs(wide, pairs)
+
+
+def with_pairs(library: Library, names: Collection[str]) -> Library:
+    """Return the library with the systems of pairs; one that is none is left out."""
+    if not names:
+        return library
+    # read only where needed: a brief without pairs does without the chemistry
+    from formbuf.product.pairs import pair_system
+
+    found: dict[str, System] = {}
+    for name in names:
+        with contextlib.suppress(InputError):
+            found[name] = dataclasses.replace(pair_system(library, name), id=name)
+    return dataclasses.replace(library, systems=_merged(library.systems, found))
 
 
 def _merged(below: Mapping[str, Row], above: Mapping[str, Row]) -> Mapping[str, Row]:

@@ -57,6 +57,16 @@ def _identifier(text: str) -> str:
     return text
 
 
+def _system_name(text: str) -> str:
+    names = [part.strip() for part in text.split("+")]
+    if len(names) > 2 or not all(_ID.fullmatch(name) for name in names):
+        allowed = (
+            'an id of small letters, digits and _, or two as "histidine + acetate"'
+        )
+        raise fail(((), "is no system and no pair of species", allowed))
+    return " + ".join(names)
+
+
 def _iso_date(value: object) -> object:
     if isinstance(value, dt.date) and not isinstance(value, dt.datetime):
         return value
@@ -74,6 +84,7 @@ Flag = Annotated[bool, Field(strict=True)]
 Text = Annotated[str, Field(max_length=200), AfterValidator(_plain_text)]
 LongText = Annotated[str, Field(max_length=1000), AfterValidator(_plain_text)]
 Id = Annotated[str, Field(max_length=80), AfterValidator(_identifier)]
+SystemName = Annotated[str, Field(max_length=160), AfterValidator(_system_name)]
 IsoDate = Annotated[dt.date, BeforeValidator(_iso_date)]
 BasisWord = Literal["published", "derived", "memory", "practice", "judgement"]
 

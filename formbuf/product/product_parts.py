@@ -8,7 +8,8 @@ from __future__ import annotations
 
 import datetime as dt
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
+from typing import Literal
 
 from formbuf.library.records import Basis
 from formbuf.product.vocabulary import (
@@ -205,8 +206,24 @@ class TitrationReading:
 
 
 @dataclass(frozen=True, slots=True)
+class TitrationPerGram:
+    """pH at which a gram of the drug has taken up strong base (negative: acid), mmol."""
+
+    ph: float
+    mmol_g: float
+
+
+#: How the proton binding of a drug is known.
+ChargeSource = Literal["titration", "pka", "residues", "net_charge"]
+
+
+@dataclass(frozen=True, slots=True)
 class DrugInfo:
-    """The drug; a concentration is None where neither stated nor convertible."""
+    """The drug; a concentration is None where neither stated nor convertible.
+
+    ``residues`` counts the ionisable groups of a protein, free ends included,
+    cysteines of disulfide bonds not.
+    """
 
     kind: DrugKind
     name: str
@@ -219,6 +236,24 @@ class DrugInfo:
     groups: tuple[str, ...]
     pka: tuple[DrugStep, ...]
     titration: tuple[TitrationReading, ...]
+    net_charge: float | None = None
+    net_charge_ph: float | None = None
+    residues: Mapping[str, float] = field(default_factory=dict)
+    titration_mmol_g: tuple[TitrationPerGram, ...] = ()
+
+    @property
+    def charge_known_from(self) -> ChargeSource | None:
+        """What tells how the drug binds protons, the best first; None if nothing."""
+        has_amount = bool(self.concentration_mmol_l)
+        if self.titration or (self.titration_mmol_g and self.concentration_mg_ml):
+            return "titration"
+        if self.pka and has_amount:
+            return "pka"
+        if self.residues and has_amount:
+            return "residues"
+        if self.net_charge is not None and has_amount:
+            return "net_charge"
+        return None
 
     @property
     def kind_group(self) -> str:

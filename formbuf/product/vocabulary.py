@@ -114,6 +114,19 @@ PROTEIN_KINDS: frozenset[DrugKind] = frozenset(
     {"antibody", "fusion_protein", "protein"}
 )
 
+#: Ionisable groups of proteins, those of ``side_chains.csv``; a test holds them equal.
+PROTEIN_GROUPS: tuple[str, ...] = (
+    "arginine",
+    "aspartate",
+    "c_terminus",
+    "cysteine",
+    "glutamate",
+    "histidine",
+    "lysine",
+    "n_terminus",
+    "tyrosine",
+)
+
 #: Neutral components that stay glassy when frozen or dried.
 AMORPHOUS_SUGARS: frozenset[str] = frozenset({"sucrose", "trehalose"})
 
@@ -183,6 +196,16 @@ MEANT: dict[str, str] = {
     "ocular": "ophthalmic_topical",
     "ear": "otic",
     "intranasal": "nasal",
+    "nose": "nasal",
+    "nasal_spray": "nasal",
+    "skin": "topical",
+    "cream": "topical",
+    "vein": "intravenous",
+    "muscle": "intramuscular",
+    "under_the_skin": "subcutaneous",
+    "mouth": "oral_liquid",
+    "by_mouth": "oral_liquid",
+    "lung": "inhalation",
     "inhaled": "inhalation",
     "nebuliser": "inhalation",
     "pulmonary": "inhalation",

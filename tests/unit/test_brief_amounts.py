@@ -93,7 +93,7 @@ def test_own_formulas_get_material_ids(library: Library) -> None:
     mine, without, acetate = _complete(HEAD + tail, library).brief.candidate
     assert dict(mine.materials) == {"l_histidine": 12.0, "sodium_chloride": 100.0}
     assert without.system == "none"
-    assert acetate.name == "sodium_acetate 10 mmol/L"
+    assert acetate.name == "sodium acetate, 10 mmol/L"
 
 
 # ---------------------------------------------------------------- own rows

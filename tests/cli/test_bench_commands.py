@@ -1,0 +1,153 @@
+"""The commands of the bench: both forms, every format, and what they must not say."""
+
+from __future__ import annotations
+
+import csv
+import io
+from pathlib import Path
+
+import pytest
+from cli_runner import EXAMPLES, formbuf
+
+ANTIBODY = str(EXAMPLES / "antibody.toml")
+BULK = str(EXAMPLES / "antibody_bulk.toml")
+PHOSPHATE = ("--system", "sodium_phosphate", "--concentration", "50", "--ph", "7.4")
+HISTIDINE = ("--system", "histidine_hydrochloride", "--concentration", "20", "--ph", "6")
+PROTEIN = ("--charge", "20", "--protein-mg-ml", "150", "--molar-mass", "148000")
+
+COMMANDS = {
+    "batch_sheet": ("batch-sheet", *PHOSPHATE, "--volume", "2"),
+    "batch_sheet_brief": (
+        "batch-sheet",
+        ANTIBODY,
+        "--system",
+        "histidine_hydrochloride",
+        "--volume",
+        "2",
+    ),
+    "challenge": ("challenge", *PHOSPHATE),
+    "challenge_brief": ("challenge", ANTIBODY, "--system", "histidine + acetate"),
+    "dilute": ("dilute", *PHOSPHATE, "--into", "glucose_5"),
+    "dilute_brief": (
+        "dilute",
+        ANTIBODY,
+        "--system",
+        "sodium_citrate",
+        "--into",
+        "sodium_chloride_0p9",
+    ),
+    "retentate": ("retentate", *HISTIDINE, *PROTEIN),
+    "retentate_brief": ("retentate", BULK, "--system", "histidine_hydrochloride"),
+}
+SCHEMAS = {
+    "batch_sheet": "formbuf.batch_sheet/1",
+    "challenge": "formbuf.challenge/1",
+    "dilute": "formbuf.dilution/1",
+    "retentate": "formbuf.retentate/1",
+}
+
+
+@pytest.mark.parametrize("name", COMMANDS)
+def test_json(name: str) -> None:
+    done = formbuf(*COMMANDS[name], "--json")
+    data = done.data()
+
+    assert done.code == 0, done.err
+    assert data["schema"] == SCHEMAS[name.removesuffix("_brief")]
+    assert data["knowledge"]["sha256"]
+    assert data["inputs"]["system"]
+
+
+@pytest.mark.parametrize("name", COMMANDS)
+def test_csv_has_rows_of_one_shape(name: str) -> None:
+    done = formbuf(*COMMANDS[name], "--format", "csv")
+    rows = list(csv.reader(io.StringIO(done.out)))
+
+    assert done.code == 0
+    assert len(rows) > 2
+    assert len({len(row) for row in rows}) == 1
+    if name.startswith("batch"):
+        assert rows[0][-4:] == ["lot", "weighed", "by", "checked"]
+        assert {cell for row in rows[1:] for cell in row[-4:]} == {""}
+
+
+@pytest.mark.parametrize("name", COMMANDS)
+def test_tables_fit_their_width(name: str) -> None:
+    done = formbuf(*COMMANDS[name], columns=80)
+
+    assert done.code == 0
+    assert max(len(line) for line in done.out.splitlines()) <= 80
+    assert "qualified staff" in done.out.replace("\n", " ")
+
+
+@pytest.mark.parametrize("name", COMMANDS)
+def test_markdown(name: str) -> None:
+    done = formbuf(*COMMANDS[name], "--format", "markdown")
+
+    assert done.code == 0
+    assert done.out.startswith("# ")
+
+
+def test_a_brief_proposes_the_concentration_of_its_shortlist() -> None:
+    name = "histidine_hydrochloride"
+    shortlist = formbuf("shortlist", ANTIBODY, "--json").data()
+    (entry,) = [c for c in shortlist["candidates"] if c["system"] == name]
+    sheet = formbuf(
+        "batch-sheet", ANTIBODY, "--system", name, "--volume", "1", "--json"
+    ).data()
+    lines = {line["material"]: line for line in sheet["ways"][0]["lines"]}
+
+    assert sheet["inputs"]["concentration_mmol_l"] == entry["concentration_mmol_l"]
+    for row in entry["composition"]:
+        assert lines[row["material"]]["mmol_l"] == pytest.approx(row["mmol_l"], rel=1e-6)
+        assert lines[row["material"]]["weigh_g"] == pytest.approx(row["g_l"], rel=1e-6)
+
+
+def test_the_formula_of_a_brief_by_its_name() -> None:
+    name = "histidine hydrochloride, 20 mmol/L"
+    data = formbuf(
+        "batch-sheet", ANTIBODY, "--system", name, "--volume", "1", "--json"
+    ).data()
+
+    assert data["inputs"]["concentration_mmol_l"] == 20.0
+
+
+def test_quick_form_and_brief_form_are_one_calculation(tmp_path: Path) -> None:
+    brief = tmp_path / "brief.toml"
+    brief.write_text(
+        '[product]\nroute = "subcutaneous"\n[ph]\ntarget = 7.4\nlow = 6.9\nhigh = 7.9\n'
+        '[tonicity]\nfill = false\n[drug]\nkind = "none"\n'
+    )
+    system = ("--system", "sodium_phosphate", "--concentration", "50")
+    one = formbuf("challenge", str(brief), *system, "--json").data()
+    other = formbuf("challenge", *PHOSPHATE, "--json").data()
+
+    assert one["points"] == other["points"]
+
+
+def test_figure(tmp_path: Path) -> None:
+    file = tmp_path / "challenge.svg"
+    done = formbuf("challenge", *PHOSPHATE, "--figure", str(file))
+
+    assert done.code == 0
+    assert file.read_text().startswith("<?xml")
+    assert f"Wrote {file}" in done.err
+
+
+def test_a_headspace_is_shown() -> None:
+    data = formbuf("challenge", *PHOSPHATE, "--headspace", "0.5", "--json").data()
+
+    assert [row["exposure"] for row in data["carbon_dioxide"]] == [
+        "closed",
+        "open",
+        "headspace",
+    ]
+
+
+def test_retentate_says_that_nothing_public_tests_it() -> None:
+    done = formbuf(*COMMANDS["retentate"])
+
+    assert "No public numbers were found" in done.out.replace("\n", " ")
+    (forward, backward) = formbuf(*COMMANDS["retentate"], "--json").data()["directions"]
+    assert forward["retentate_ph"] > forward["buffer_ph"]
+    assert backward["buffer_ph"] < backward["retentate_ph"] == pytest.approx(6.0)
