@@ -24,6 +24,8 @@ COMMANDS: Mapping[str, Entry] = {
     "sensitivity": Entry("formbuf.cli.sensitivity", "Find what would change the lead."),
     "scan": Entry("formbuf.cli.scan", "Evaluate a grid of briefs as CSV."),
     "freeze-thaw": Entry("formbuf.cli.freeze_thaw", "Compare systems on freezing."),
+    "rationale": Entry("formbuf.cli.rationale", "Write the report."),
+    "changes": Entry("formbuf.cli.changes", "Compare two results."),
     "predict": Entry("formbuf.cli.predict", "Predict pH and more of a composition."),
     "batch-sheet": Entry("formbuf.cli.batch_sheet", "Work out what to weigh."),
     "challenge": Entry("formbuf.cli.challenge", "Show pH under acid and base."),

@@ -69,6 +69,7 @@ CANDIDATE_KEYS = [
     "findings",
     "screened_out_by",
     "screens_set_aside",
+    "finding_counts",
     "notes",
 ]
 CRITERION_KEYS = [
@@ -104,7 +105,7 @@ def _rows(text: str) -> list[dict[str, str]]:
 def test_shortlist_json_keys(antibody: dict[str, Any]) -> None:
     assert list(antibody) == SHORTLIST_KEYS
     assert antibody["schema"] == "formbuf.shortlist/1"
-    keys = ["version", "sha256", "overlay", "overlay_sha256"]
+    keys = ["version", "sha256", "overlay", "overlay_sha256", "precedent_file"]
     assert list(antibody["knowledge"]) == keys
     for candidate in antibody["candidates"]:
         assert list(candidate) == CANDIDATE_KEYS

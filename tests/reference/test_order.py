@@ -106,6 +106,7 @@ def _report(title, outcomes):
             print(f"  screened out: {o.id} {o.species}: {o.reasons}")
 
 
+@pytest.mark.slow
 def test_licensed_choices_are_plausible():
     """Makers' species: first or tied for half, in the top three for three quarters.
 
