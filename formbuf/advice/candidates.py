@@ -6,7 +6,7 @@ from dataclasses import replace
 
 import numpy as np
 
-from formbuf.advice import criteria, frozen, precedent, screens
+from formbuf.advice import frozen, precedent, screens
 from formbuf.advice.case import Case, is_mixture
 from formbuf.advice.compatibility import (
     exposures_of,
@@ -15,12 +15,13 @@ from formbuf.advice.compatibility import (
     rule_screens,
 )
 from formbuf.advice.evaluate import Product, evaluate, single
-from formbuf.advice.measure import judge_criteria
+from formbuf.advice.measure import judge_criteria, taken_drift
 from formbuf.advice.precedent import SpeciesStanding
 from formbuf.advice.results import Candidate, CriterionResult, Screen
 from formbuf.advice.sizing import Sizing, proposed_mmol_l, size
 from formbuf.errors import InputError
 from formbuf.library.records import System
+from formbuf.product.product_brief import ProductBrief
 from formbuf.product.recipe import make
 
 
@@ -132,11 +133,9 @@ def judge_product(
             "the loads"
         )
         judged = {**judged, "capacity": _at_floor(judged["capacity"], case)}
-    drift = criteria.storage_drift(
-        product.states,
-        brief.liquid_storage_temperatures_c,
-        brief.ph.measure_temperature_c,
-    )
+    drift = taken_drift(case, system, product)
+    if drift is not None and drift[2] and drift[1] != brief.ph.measure_temperature_c:
+        notes.append(_unknown_drift(brief, drift))
     kept = case.thorough or all(one.overridden_by for one in fired)
     frost = frozen.freeze(case, system, product, concentration_mmol_l) if kept else None
     if frost is not None:
@@ -244,7 +243,8 @@ def _screens(
     library, brief, settings = case.library, case.brief, case.settings
     fired = screens.precedent_screens(found, brief)
     notes = [*screens.novelty_notes(found), *precedent.listed_notes(found)]
-    fired += screens.exclusion_screens(library, system, brief.exclude)
+    made_of = [w.material for w in product.composition]
+    fired += screens.exclusion_screens(library, system, brief.exclude, made_of)
     if not own_name:
         ceiling, said = screens.ceiling_screen(
             sizing,
@@ -274,7 +274,7 @@ def _screens(
     ):
         if one is not None:
             fired.append(one)
-    return [_overridden(case, system, one) for one in fired], notes
+    return [set_aside(case, system, one) for one in fired], notes
 
 
 def _headspace_pa(case: Case) -> float:
@@ -301,13 +301,24 @@ def _two_species_screen(case: Case, system: System, product: Product) -> Screen 
     )
 
 
-def _overridden(case: Case, system: System, screen: Screen) -> Screen:
+def set_aside(case: Case, system: System, screen: Screen) -> Screen:
     """Mark a screen that a scientist has set aside."""
     for o in case.brief.override:
         if o.rule == screen.id and o.system in (None, system.id):
             who = f"{o.name}, {o.date.isoformat()}: {o.reason}"
             return replace(screen, overridden_by=who)
     return screen
+
+
+def _unknown_drift(brief: ProductBrief, drift: tuple[float, float, str]) -> str:
+    """Say that a pH at another temperature is not known."""
+    text = (
+        f"its pH at {drift[1]:g} C is not known, a drift of {drift[0]:+.2f} is taken: "
+        f"{drift[2]}"
+    )
+    if brief.ph.storage_low is not None:
+        text += "; whether it keeps the storage window is open"
+    return text
 
 
 def _at_floor(result: CriterionResult, case: Case) -> CriterionResult:

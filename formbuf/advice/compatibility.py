@@ -18,10 +18,15 @@ from formbuf.advice.screening import (
     screen,
     worst_per_topic,
 )
+from formbuf.advice.wording import plain
 from formbuf.library.records import System
 from formbuf.product import quantities
 from formbuf.product.facts import candidate_facts
 from formbuf.product.quantities import CandidateQuantities
+
+#: Decimals of the pH that rules test: a product made to pH 6 is not below pH 6
+#: because its equilibrium was solved to 5.9999998.
+PH_DIGITS = 3
 
 
 def quantities_of(
@@ -43,7 +48,7 @@ def quantities_of(
     return CandidateQuantities(
         system=system.id,
         species=own,
-        ph={s.temperature_c: s.ph for s in product.states},
+        ph={s.temperature_c: round(s.ph, PH_DIGITS) for s in product.states},
         measure_temperature_c=case.brief.ph.measure_temperature_c,
         species_mmol_l={
             ladder.name: float(mixed.totals_mol_kg[..., j]) * scale
@@ -115,7 +120,7 @@ def shown_values(finding: Finding) -> str:
         if isinstance(value, bool):
             parts.append(f"{name} {'yes' if value else 'no'}")
         elif isinstance(value, float | int):
-            parts.append(f"{name} {value:.3g}")
+            parts.append(f"{name} {plain(value)}")
         elif isinstance(value, frozenset):
             parts.append(f"{name} {', '.join(sorted(value))}")
         else:

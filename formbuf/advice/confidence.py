@@ -14,6 +14,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from formbuf.advice.chance_records import Chance, Flip, RankChances
 from formbuf.advice.confidence_records import (
     CandidateConfidence,
     Confidence,
@@ -29,9 +30,6 @@ from formbuf.advice.draw_candidate import (
 from formbuf.advice.draw_criteria import log_desirabilities
 from formbuf.advice.draw_inputs import Input
 from formbuf.advice.rank_chances import (
-    Chance,
-    Flip,
-    RankChances,
     any_weights,
     chance,
     flips,

@@ -9,10 +9,9 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from formbuf.advice.chance_records import Chance, Flip, RankChances, WeightChange
 from formbuf.advice.error_model import Deviation
-from formbuf.advice.rank_chances import Chance, Flip, RankChances
 from formbuf.advice.variance_shares import QuantityShares
-from formbuf.advice.weight_changes import WeightChange
 from formbuf.product.product_brief import plain
 
 LEVELS = (0.025, 0.05, 0.25, 0.5, 0.75, 0.95, 0.975)

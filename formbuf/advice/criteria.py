@@ -10,6 +10,7 @@ from formbuf.advice.criteria_table import Settings
 from formbuf.advice.desirability import deviation_ln, scaled
 from formbuf.advice.precedent import PrecedentScore
 from formbuf.advice.results import CriterionResult, Exposure, LiquidState
+from formbuf.advice.wording import percent, plain
 from formbuf.chemistry.ionization import Ladder, pk_shift, state_fractions
 from formbuf.constants import LN10
 
@@ -34,14 +35,14 @@ def capacity(
     shown = (
         f"more than {largest_mmol_l:g}"
         if required_mmol_l is None
-        else f"{required_mmol_l:.3g}"
+        else plain(required_mmol_l)
     )
     listed = ", as the file of the user lists it" if sources else ""
     return CriterionResult(
         value,
         anchors.unit,
         d,
-        f"carrying the loads takes {shown} mmol/L; the ceiling is {floor:.3g} mmol/L"
+        f"carrying the loads takes {shown} mmol/L; the ceiling is {plain(floor)} mmol/L"
         f"{listed}",
         sources=sources,
         deviation_ln=deviation_ln(
@@ -127,7 +128,7 @@ def dose_burden(
         value,
         anchors.unit,
         scaled(value, anchors, floor, settings.floor_value),
-        f"{worst.substance}: {100.0 * value:.3g} % of the limit "
+        f"{worst.substance.replace('_', ' ')}: {percent(value)} of the limit "
         f"{worst.limit:g} {worst.limit_unit}",
         sources=(worst.limit_source,) if worst.limit_source else (),
         deviation_ln=deviation_ln(

@@ -60,8 +60,18 @@ class LoadBudget:
 
     @property
     def all_default(self) -> bool:
-        """Whether no load was stated by the user."""
-        return all(item.is_default for item in self.items)
+        """Whether no load was stated, and none is computed beyond the defaults.
+
+        What the pack lets in is computed, not stated: a trace of carbon dioxide does
+        not turn default allowances into a user's loads.
+        """
+        computed = [item for item in self.items if item.basis == "derived"]
+        rest = [item for item in self.items if item.basis != "derived"]
+        return (
+            all(item.is_default for item in rest)
+            and sum(i.acid_mmol_l for i in computed) <= sum(i.acid_mmol_l for i in rest)
+            and sum(i.base_mmol_l for i in computed) <= sum(i.base_mmol_l for i in rest)
+        )
 
 
 def load_budget(library: Library, brief: ProductBrief) -> LoadBudget:

@@ -71,10 +71,21 @@ def _species_amounts(case: Case, system: System, product: Product) -> tuple[floa
     return tuple(content[s] for s in system.species)
 
 
-def _drift(
-    case: Case, system: System, product: Product, amounts: tuple[float, ...]
-) -> CriterionResult | None:
-    brief, settings, library = case.brief, case.settings, case.library
+def taken_drift(
+    case: Case, system: System, product: Product
+) -> tuple[float, float, str] | None:
+    """Largest change of pH at a liquid storage temperature, and at which.
+
+    Where an enthalpy that matters is unknown, the worst of its family is taken, since
+    a pK left as at 25 C would show no drift at all.
+
+    Returns
+    -------
+    (drift_ph, temperature_c, unknown) or None
+        The last says what is unknown and taken; empty where all is known. None where
+        the product is not stored as a liquid.
+    """
+    brief = case.brief
     measure = brief.ph.measure_temperature_c
     found = criteria.storage_drift(
         product.states, brief.liquid_storage_temperatures_c, measure
@@ -82,17 +93,33 @@ def _drift(
     if found is None:
         return None
     drift, at_c = found
-    species = tuple(library.species[s] for s in system.species)
-    ladders = tuple(ladder_of(s) for s in species)
+    species = tuple(case.library.species[s] for s in system.species)
     slope, unknown = criteria.unknown_drift_per_k(
-        ladders,
-        amounts,
+        tuple(ladder_of(s) for s in species),
+        _species_amounts(case, system, product),
         tuple(s.family for s in species),
         brief.ph.target,
-        settings,
+        case.settings,
     )
-    if unknown and abs(slope * (at_c - measure)) > abs(drift):
-        drift = slope * (at_c - measure)
+    if not unknown:
+        return drift, at_c, ""
+    coldest = max(brief.liquid_storage_temperatures_c, key=lambda t: abs(t - measure))
+    if abs(slope * (coldest - measure)) > abs(drift):
+        drift, at_c = slope * (coldest - measure), coldest
+    return drift, at_c, unknown
+
+
+def _drift(
+    case: Case, system: System, product: Product, amounts: tuple[float, ...]
+) -> CriterionResult | None:
+    brief, settings, library = case.brief, case.settings, case.library
+    measure = brief.ph.measure_temperature_c
+    found = taken_drift(case, system, product)
+    if found is None:
+        return None
+    drift, at_c, unknown = found
+    species = tuple(library.species[s] for s in system.species)
+    ladders = tuple(ladder_of(s) for s in species)
     deviations = tuple(
         tuple(
             (step.dh_kj_mol.uncertainty or 1.0) if step.dh_kj_mol else 10.0

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 
@@ -63,7 +64,8 @@ def missing_that_matter(
     A rule counts where it could not be judged, concerns the buffer, and would weigh
     more than what already fired in its topic. Its stake is shared by the facts it
     lacks. A fact whose rules are open for every candidate alike changes no order, so
-    only its exclusions count. Computed facts cannot be asked for and are left out.
+    only its exclusions count. Computed facts cannot be asked for and are left out, and
+    so are facts that only arise from the answer to another one that is missing.
     """
     names = list(by_candidate) if contenders is None else list(contenders)
     weights: dict[str, float] = {}
@@ -85,7 +87,10 @@ def missing_that_matter(
                 if finding.severity == "exclude":
                     excluding.add(name)
     telling = [
-        name for name in weights if name in excluding or len(systems[name]) < len(names)
+        name
+        for name in weights
+        if (name in excluding or len(systems[name]) < len(names))
+        and not _waits(vocabulary[name], weights)
     ]
     telling.sort(key=lambda name: (name not in excluding, -weights[name], name))
     return [
@@ -98,6 +103,11 @@ def missing_that_matter(
         )
         for name in telling[:limit]
     ]
+
+
+def _waits(fact: FactDefinition, asked: Iterable[str]) -> bool:
+    """Whether a question only arises from the answer to another that is asked."""
+    return not set(asked).isdisjoint(re.findall(r"\w+", fact.only_if))
 
 
 def _open(findings: Sequence[Finding]) -> list[Finding]:

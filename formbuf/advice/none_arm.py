@@ -22,6 +22,7 @@ from formbuf.errors import InputError
 from formbuf.library.records import System
 from formbuf.product.composition import Mixture
 from formbuf.product.recipe import make
+from formbuf.product.vocabulary import PROTEIN_KINDS
 
 #: A strong acid or base alone makes the product; as a system without species.
 SYSTEM_ID = "none"
@@ -64,7 +65,12 @@ def _carried(case: Case) -> tuple[float | None, str]:
         return _least(acid, alkali, case), known_from
     if loads.acid_mmol_l <= 0.0 and loads.base_mmol_l <= 0.0:
         return float("inf"), "no load"
-    return None, "protein" if drug.is_biologic else "unknown"
+    least = _least(*_drug_capacity(case), case)
+    if least >= 1.0:
+        return least, "rest"
+    if drug.kind in PROTEIN_KINDS:
+        return None, "protein"
+    return None, "biologic" if drug.is_biologic else "unknown"
 
 
 def _least(acid_mmol_l: float, base_mmol_l: float, case: Case) -> float:
@@ -81,7 +87,10 @@ def _least(acid_mmol_l: float, base_mmol_l: float, case: Case) -> float:
 
 
 def _drug_capacity(case: Case) -> tuple[float, float]:
-    """Acid and base [mmol/L] that drug, excipients and water take up in the window."""
+    """Acid and base [mmol/L] that drug, excipients and water take up in the window.
+
+    Of a drug of which nothing is known, the rest is the least that the product takes.
+    """
     windows = windows_of(case.brief)
     t = windows.measure_c
     mixed = _bare_mixture(case, windows.start_low)
@@ -113,6 +122,11 @@ def _standing(case: Case, carried: float | None, how: str) -> tuple[Standing, st
             "what the protein itself buffers is unknown: a measured titration of the "
             "product without buffer would decide, its sequence or charge would help"
         )
+    if how == "biologic":
+        return "not evaluable", (
+            "what the drug itself buffers is unknown: a measured titration of the "
+            "product without buffer would decide"
+        )
     if carried is None:
         if how == "titration does not span the window":
             return "not evaluable", "the measured titration does not span the window"
@@ -126,12 +140,20 @@ def _standing(case: Case, carried: float | None, how: str) -> tuple[Standing, st
         "residues": "by its residues taken as independent, which overstates it",
         "net_charge": "by its isoelectric point and charge, a straight line",
         "no load": "since no load is expected",
+        "rest": "by water and excipients alone, whatever the drug adds",
     }[how]
-    shown = "all" if carried >= 1.0 else f"{100.0 * carried:.0f} %"
-    note = f"without a buffer the product carries {shown} of the loads, {basis}"
+    note = (
+        f"without a buffer the product carries {_share(carried)} of the loads, {basis}"
+    )
     if carried < 1.0:
         return "viable", f"{note}: not enough by itself"
     return ("lead" if how == "titration" else "back-up"), note
+
+
+def _share(carried: float | None) -> str:
+    if carried is None or carried >= 1.0:
+        return "all"
+    return f"{100.0 * carried:.0f} %"
 
 
 def _made(case: Case, system: System, carried: float | None) -> Candidate:
@@ -200,6 +222,8 @@ def _made(case: Case, system: System, carried: float | None) -> Candidate:
         judged = dict(
             judge_criteria(case, system, product, sizing, found, ceiling, 0.0)
         )
+        text = f"without a buffer the product carries {_share(carried)} of the loads"
+        judged["capacity"] = replace(judged["capacity"], text=text)
     storage = [s for s in product.states if "storage" in s.kinds]
     reference = next(s.ph for s in product.states if "measure" in s.kinds)
     drift = max((s.ph - reference for s in storage), key=abs, default=None)
@@ -213,6 +237,7 @@ def _made(case: Case, system: System, carried: float | None) -> Candidate:
         species_states=product.species_states,
         ph_drift=drift if has_drug else None,
         osmolality_mosm_kg=product.osmolality_mosm_kg,
+        titratable_acidity_mmol_l=product.titratable_acidity_mmol_l if known else None,
         exposures=exposures_of(case, numbers),
         findings=findings_of(case, numbers),
         criteria=judged,

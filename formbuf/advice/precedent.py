@@ -6,11 +6,14 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 
 from formbuf.advice.criteria_table import Settings
+from formbuf.advice.wording import plain
 from formbuf.library import Library
 from formbuf.library.inactive_ingredients import SOURCE_ID
 from formbuf.library.records import KindPrecedent, Precedent, System
 from formbuf.product.product_brief import ProductBrief
 
+#: Name under which the product without buffer stands in the precedents.
+NO_BUFFER = "none"
 #: Route groups on which potassium as the ion of the buffer counts as limited.
 POTASSIUM_LIMITED = ("parenteral", "ophthalmic_topical")
 
@@ -164,13 +167,16 @@ def _species_score(
 ) -> PrecedentScore:
     level = s.row.level if s.row is not None else "none"
     level_value = float(table.get(level, table["none"]))
-    words = [f"{s.species}: {level} on this route"]
+    is_bare = s.species == NO_BUFFER
+    words = [f"{'no buffer' if is_bare else s.species}: {level} on this route"]
     if has_potassium(library, system) and brief.route_group in POTASSIUM_LIMITED:
         limited = float(table["limited"])
         if limited < level_value:
             level_value = limited
             words.append("potassium as the ion of the buffer counts as limited")
-    if kind_applies(library, brief):
+    if is_bare:  # the kind table lists buffers, so its silence says nothing here
+        kind_value = 1.0
+    elif kind_applies(library, brief):
         kind = s.kind_row.level if s.kind_row is not None else "none"
         kind_value = float(table[f"kind_{kind}"])
         words.append(f"{kind} for this kind of product")
@@ -181,9 +187,9 @@ def _species_score(
     own = concentration_mmol_l * s.share
     if usual is not None and own > usual:
         closeness = (usual / own) ** float(table["above_usual_exponent"])
-        words.append(f"{own:.3g} mmol/L is above the usual {usual:g}")
+        words.append(f"{plain(own)} mmol/L is above the usual {usual:g}")
     elif usual is not None:
-        words.append(f"{own:.3g} mmol/L is within usual use (up to {usual:g})")
+        words.append(f"{plain(own)} mmol/L is within usual use (up to {usual:g})")
     sources = tuple(x for x in (s.row.source if s.row else "", _kind_source(s)) if x)
     recall = s.row is None or s.row.level_basis != "published" or bool(s.kind_row)
     return PrecedentScore(

@@ -8,32 +8,15 @@ weights alike (uniform on the simplex).
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
+from formbuf.advice.chance_records import Chance, Flip, RankChances
 from formbuf.advice.draw_criteria import overall
 from formbuf.advice.sampling import Sampler
 
 Array = NDArray[np.float64]
-
-
-@dataclass(frozen=True, slots=True)
-class Chance:
-    """A share of draws and its standard error.
-
-    Attributes
-    ----------
-    value : float
-        0 to 1.
-    standard_error : float
-        Of a count of independent draws, with one success and one failure added so
-        that it does not vanish at 0 and 1.
-    """
-
-    value: float
-    standard_error: float
 
 
 def chance(hits: NDArray[np.bool_]) -> Chance:
@@ -47,24 +30,6 @@ def chance(hits: NDArray[np.bool_]) -> Chance:
     share = float(np.count_nonzero(hits)) / count
     smooth = (share * count + 1.0) / (count + 2.0)
     return Chance(share, float(np.sqrt(smooth * (1.0 - smooth) / (count + 2.0))))
-
-
-@dataclass(frozen=True, slots=True)
-class RankChances:
-    """Ranks of one candidate over the draws.
-
-    Attributes
-    ----------
-    ranks : tuple of Chance
-        Of rank 1, 2, ...; they sum to one.
-    lead : Chance
-    expected_loss : float
-        Mean of the best desirability less its own: what choosing it costs.
-    """
-
-    ranks: tuple[Chance, ...]
-    lead: Chance
-    expected_loss: float
 
 
 def rank_chances(scores: Array) -> tuple[RankChances, ...]:
@@ -94,15 +59,6 @@ def rank_chances(scores: Array) -> tuple[RankChances, ...]:
         )
         for i, own in enumerate(places)
     )
-
-
-@dataclass(frozen=True, slots=True)
-class Flip:
-    """Chance that two candidates stand in the other order."""
-
-    first: str
-    second: str
-    chance: Chance
 
 
 def flips(keys: Sequence[str], scores: Array) -> tuple[Flip, ...]:

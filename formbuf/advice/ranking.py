@@ -9,8 +9,11 @@ from dataclasses import replace
 from formbuf.advice.criteria_table import Settings
 from formbuf.advice.desirability import geometric_mean
 from formbuf.advice.results import Candidate, Standing
+from formbuf.errors import InputError
 
 NONE_ID = "none"
+#: Half a step of the last digit in which desirability is printed.
+SAME_DESIRABILITY = 0.0005
 
 
 def scored(candidate: Candidate, settings: Settings) -> Candidate:
@@ -20,16 +23,17 @@ def scored(candidate: Candidate, settings: Settings) -> Candidate:
         return candidate
     weights = settings.weights
     total = sum(weights[name] for name in values)
+    if total <= 0.0:
+        msg = (
+            "ranking.weights: every criterion that applies to this product "
+            f"({', '.join(values)}) has weight 0, allowed at least one above zero"
+        )
+        raise InputError(msg)
     worst = min(
         values, key=lambda n: (weights[n] * math.log(values[n]), list(values).index(n))
     )
-    variance = (
-        sum(
-            (weights[n] / total * candidate.criteria[n].deviation_ln) ** 2
-            for n in values
-        )
-        if total
-        else 0.0
+    variance = sum(
+        (weights[n] / total * candidate.criteria[n].deviation_ln) ** 2 for n in values
     )
     marked = {
         name: replace(c, limiting=name == worst and values[worst] < 1.0)
@@ -76,6 +80,7 @@ def rank(candidates: Sequence[Candidate], settings: Settings) -> tuple[Candidate
     groups: dict[str, list[Candidate]] = {}
     for candidate in sorted(alive, key=_order):
         groups.setdefault(group_of(candidate), []).append(candidate)
+    groups = {name: _plainest_first(members) for name, members in groups.items()}
     heads = [members[0] for members in groups.values()]
     ties = _ties(heads, settings)
     result: list[Candidate] = []
@@ -103,6 +108,23 @@ def _is_beside(candidate: Candidate) -> bool:
 
 def _order(candidate: Candidate) -> tuple[float, str]:
     return (-round(candidate.desirability or 0.0, 12), candidate.key)
+
+
+def _plainest_first(members: Sequence[Candidate]) -> list[Candidate]:
+    """Let the plainest salt stand for its species where desirability is the same.
+
+    Within what is printed, a buffer without a second buffering species, then one with
+    sodium, is what a formulator would make.
+    """
+    best = members[0].desirability or 0.0
+    close = [c for c in members if best - (c.desirability or 0.0) < SAME_DESIRABILITY]
+
+    def plainness(candidate: Candidate) -> tuple[int, bool]:
+        system = candidate.system
+        return len(system.species), system.base_titrant != "sodium_hydroxide"
+
+    head = min(close, key=plainness)
+    return [head, *(c for c in members if c is not head)]
 
 
 def _standing(head: Candidate, placed: Sequence[Candidate]) -> Standing:

@@ -12,12 +12,13 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any
 
+from formbuf.advice.chance_records import WeightChange
 from formbuf.advice.criteria_table import settings_for
 from formbuf.advice.decision_map import Progress
 from formbuf.advice.loads import load_budget
 from formbuf.advice.results import Candidate
 from formbuf.advice.variations import Variation, heads_of, ranked_with
-from formbuf.advice.weight_changes import WeightChange, weight_changes
+from formbuf.advice.weight_changes import weight_changes
 from formbuf.errors import InputError
 from formbuf.product.brief import Completed
 from formbuf.product.product_brief import plain

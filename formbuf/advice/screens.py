@@ -11,6 +11,7 @@ from formbuf.advice.evaluate import Product
 from formbuf.advice.precedent import SpeciesStanding, has_monograph
 from formbuf.advice.results import LiquidState, Screen
 from formbuf.advice.sizing import Sizing
+from formbuf.advice.wording import plain
 from formbuf.chemistry import gas
 from formbuf.library import Library
 from formbuf.library.records import Material, Solubility, System
@@ -43,7 +44,7 @@ def precedent_screens(
         level = s.row.level if s.row is not None else "none"
         basis = s.row.level_basis if s.row is not None else "judgement"
         source = s.row.source if s.row is not None else ""
-        route = brief.product.route
+        route = brief.product.route.replace("_", " ")
         if level == "avoid":
             reason = f": {s.row.reason}" if s.row is not None and s.row.reason else ""
             screens.append(
@@ -96,10 +97,10 @@ def ceiling_screen(
     if required is not None and required <= ceiling_mmol_l * (1.0 + 1e-9):
         return None, ""
     carried = sizing.carried_at(ceiling_mmol_l)
-    shown = f"{required:.3g}" if required is not None else f"over {largest_mmol_l:g}"
+    shown = f"over {largest_mmol_l:g}" if required is None else plain(required)
     text = (
-        f"the loads ask for {shown} mmol/L; the ceiling of {ceiling_mmol_l:.3g} mmol/L "
-        f"carries {100.0 * carried:.0f} % of them"
+        f"the loads ask for {shown} mmol/L; the ceiling of {plain(ceiling_mmol_l)} "
+        f"mmol/L carries {100.0 * carried:.0f} % of them"
     )
     if loads_are_default and carried >= default_share:
         return None, f"{text} (default loads: kept at the ceiling)"
@@ -107,13 +108,21 @@ def ceiling_screen(
 
 
 def exclusion_screens(
-    library: Library, system: System, exclude: Iterable[str]
+    library: Library,
+    system: System,
+    exclude: Iterable[str],
+    materials: Iterable[str] | None = None,
 ) -> list[Screen]:
-    """Excluded by the brief: the system, one of its species, or an ion it brings."""
-    materials = [m for m in (system.acid_material, system.base_material) if m]
+    """Excluded by the brief: the system, one of its species, or an ion it brings.
+
+    ``materials`` are those it is made of, titrants included; those of the tables
+    where it is not made yet.
+    """
+    if materials is None:
+        materials = [m for m in (system.acid_material, system.base_material) if m]
     brought = {
         component
-        for material in [*materials]
+        for material in materials
         for component in library.find_material(material).contents
     }
     names = {system.id, *system.species, *brought}
@@ -163,16 +172,16 @@ def carbon_dioxide_screen(
     if exposure == "open":
         return Screen(
             "carbon_dioxide",
-            f"open to the air it loses its carbon dioxide ({pressure / 1000.0:.3g} kPa "
-            f"above {total:.3g} mmol/L): the pH is not held",
+            f"open to the air it loses its carbon dioxide ({plain(pressure / 1000.0)} kPa "
+            f"above {plain(total)} mmol/L): the pH is not held",
             "derived",
             "sander_2023",
         )
     if pressure > allowed_pa:
         return Screen(
             "carbon_dioxide",
-            f"it would need {pressure / 1000.0:.3g} kPa of carbon dioxide above it, "
-            f"allowed {allowed_pa / 1000.0:.3g} kPa in the headspace",
+            f"it would need {plain(pressure / 1000.0)} kPa of carbon dioxide above it, "
+            f"allowed {plain(allowed_pa / 1000.0)} kPa in the headspace",
             "derived",
             "sander_2023",
         )
@@ -188,9 +197,11 @@ def storage_window_screen(
         return None
     for s in states:
         if "storage" in s.kinds and not low <= s.ph <= high:
+            near = min(abs(s.ph - low), abs(s.ph - high)) < 0.005
             return Screen(
                 "storage_window",
-                f"pH {s.ph:.2f} at {s.temperature_c:g} C, allowed {low:g} to {high:g}",
+                f"pH {s.ph:.{4 if near else 2}f} at {s.temperature_c:g} C, allowed "
+                f"{low:g} to {high:g}",
                 "derived",
             )
     return None

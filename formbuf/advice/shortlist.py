@@ -6,7 +6,7 @@ from formbuf.advice.candidates import judge_system
 from formbuf.advice.case import Case, case_for, considered_systems, is_mixture
 from formbuf.advice.compatibility import with_compatibility
 from formbuf.advice.missing_facts import missing_that_matter
-from formbuf.advice.none_arm import judge_none
+from formbuf.advice.none_arm import SYSTEM_ID, judge_none
 from formbuf.advice.own_formula import judge_own
 from formbuf.advice.ranking import rank
 from formbuf.advice.results import Candidate, Shortlist
@@ -15,6 +15,7 @@ from formbuf.advice.screens import SCREENS
 from formbuf.advice.verdict import verdict, warnings_of
 from formbuf.library import Library
 from formbuf.product.brief import Brief, complete
+from formbuf.product.product_parts import CandidateInfo
 
 __all__ = ["Shortlist", "shortlist"]
 
@@ -83,8 +84,13 @@ def judge_all(case: Case) -> list[Candidate]:
     systems = considered_systems(case)
     judged += [judge_system(case, system) for system in systems]
     judged += _mixtures(case, judged)
-    judged += [judge_own(case, own) for own in case.brief.candidate]
+    judged += [judge_own(case, own) for own in case.brief.candidate if not _bare(own)]
     return judged
+
+
+def _bare(own: CandidateInfo) -> bool:
+    """Whether a formula of the brief is the product without buffer, judged anyway."""
+    return own.system == SYSTEM_ID
 
 
 def _mixtures(case: Case, judged: list[Candidate]) -> list[Candidate]:

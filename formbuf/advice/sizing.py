@@ -80,10 +80,14 @@ class Windows:
     others_c: tuple[float, ...]
 
 
-def windows_of(brief: ProductBrief) -> Windows:
-    """Return release extremes, room and liquid temperatures of a brief."""
+def windows_of(brief: ProductBrief, made_to_ph: float | None = None) -> Windows:
+    """Return release extremes, room and liquid temperatures of a brief.
+
+    ``made_to_ph`` is the pH of a formula that is what it is; the target if absent.
+    """
     ph = brief.ph
-    low, high = ph.target - ph.release_tolerance, ph.target + ph.release_tolerance
+    centre = ph.target if made_to_ph is None else made_to_ph
+    low, high = centre - ph.release_tolerance, centre + ph.release_tolerance
     others = tuple(
         t
         for t in brief.liquid_storage_temperatures_c
@@ -183,6 +187,47 @@ def size(
             which = np.where(tighter, label, which)
     required, index = _crossing(grid, best)
     return Sizing(required, str(which[index]), float(where[index]), best, grid)
+
+
+def carried_by(
+    mixture: Mixture, species: tuple[str, ...], windows: Windows, loads: LoadBudget
+) -> tuple[float, str, float]:
+    """Share of the loads that the own species of a finished product carry.
+
+    Parameters
+    ----------
+    mixture : Mixture
+        A single state.
+    species : tuple of str
+        The buffer's own.
+    windows : Windows
+        Around the pH it has; see ``windows_of``.
+    loads : LoadBudget
+
+    Returns
+    -------
+    (share, load, temperature_c)
+        The smallest share, negative where the pH lies beyond its window already, with
+        the load and the temperature that set it; infinite without loads.
+    """
+    own = [k for k in map(mixture.index, species) if k >= 0]
+    water = 1000.0 * float(mixture.water_kg_l)
+    measured = float(mixture.solve(windows.measure_c).ph)
+    tightest = (float("inf"), "none", windows.measure_c)
+    for t in (windows.measure_c, *windows.others_c):
+        move = float(mixture.solve(t).ph) - measured
+        for label, load, titrant, start, way in (
+            ("acid", loads.acid_mmol_l, STRONG_ACID, windows.start_low, -1.0),
+            ("base", loads.base_mmol_l, STRONG_BASE, windows.start_high, 1.0),
+        ):
+            if load <= 0.0:
+                continue
+            room = windows.room_low if way < 0.0 else windows.room_high
+            at = np.array([start, start + way * room]) + move
+            held = mixture.titrate(t, at, titrant).charge_mol_kg[..., own].sum(axis=-1)
+            share = -way * float(held[1] - held[0]) * water / load
+            tightest = min(tightest, (share, label, t), key=lambda entry: entry[0])
+    return tightest
 
 
 def _own_capacity(

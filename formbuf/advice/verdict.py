@@ -16,6 +16,14 @@ def listed(names: Sequence[str]) -> str:
     return f"{', '.join(names[:-1])} and {names[-1]}"
 
 
+def amount_and_name(candidate: Candidate) -> str:
+    """Return amount and name of a candidate, the amount once."""
+    amount = f"{candidate.concentration_mmol_l:g} mmol/L"
+    if not candidate.concentration_mmol_l or amount in candidate.name:
+        return candidate.name
+    return f"{amount} {candidate.name}"
+
+
 def verdict(candidates: Sequence[Candidate]) -> str:
     """Say which candidate leads, what it is tied with, and the back-up."""
     by_key = {c.key: c for c in candidates}
@@ -23,20 +31,14 @@ def verdict(candidates: Sequence[Candidate]) -> str:
     if not heads:
         return "No candidate is acceptable: every system is screened out."
     lead = heads[0]
-    made = (
-        f"{lead.concentration_mmol_l:g} mmol/L {lead.name}"
-        if lead.concentration_mmol_l
-        else lead.name
-    )
+    made = amount_and_name(lead)
     sentences = [f"Lead: {made}."]
     ties = [by_key[key].name for key in lead.tied_with]
     if ties:
         sentences[0] = f"Lead: {made}, tied within uncertainty with {listed(ties)}."
     backup = next((c for c in heads if c.standing == "back-up"), None)
     if backup is not None:
-        sentences.append(
-            f"Back-up: {backup.concentration_mmol_l:g} mmol/L {backup.name}."
-        )
+        sentences.append(f"Back-up: {amount_and_name(backup)}.")
     else:
         sentences.append("There is no back-up.")
     return " ".join(sentences)
@@ -45,20 +47,76 @@ def verdict(candidates: Sequence[Candidate]) -> str:
 def warnings_of(case: Case, candidates: Sequence[Candidate]) -> tuple[str, ...]:
     """Return what a reader must know about the result as a whole."""
     found = precedent_file_warnings(case.library)
-    if case.loads.all_default:
+    stated = case.brief.loads
+    if stated.acid_is_default and stated.base_is_default:
         found.append(
             "no acid or base load was stated: concentrations rest on default loads"
         )
-    top = [c for c in candidates if c.rank == 1]
-    high = case.brief.tonicity.high_mosm_kg
-    for c in top:
-        osmol = c.osmolality_mosm_kg
-        if osmol is not None and high is not None and osmol > high:
-            found.append(
-                f"{c.name}: the whole product has {osmol:.0f} mosmol/kg, allowed "
-                f"{high:.0f}"
-            )
+    if not case.loads.acid_mmol_l and not case.loads.base_mmol_l:
+        found.append(
+            "no load is expected at all: any buffer carries it, so capacity orders "
+            "nothing, and the product without buffer is the one to beat"
+        )
+    found += _excluded_but_brought(case)
+    found += _osmolality_warnings(case, candidates)
     return tuple(found)
+
+
+def _excluded_but_brought(case: Case) -> list[str]:
+    """Name what the brief excludes and the rest of the product brings all the same."""
+    brief, library = case.brief, case.library
+    rows = [(library.find_material(e.material), "excipient") for e in brief.excipient]
+    if case.background.agent is not None:
+        rows.append((library.find_material(case.background.agent), "tonicity agent"))
+    found = [
+        f"{name} is excluded by the brief, yet the {what} {material.name} brings it"
+        for material, what in rows
+        for name in material.contents
+        if name in brief.exclude
+    ]
+    if brief.drug.counter_ion in brief.exclude:
+        found.append(
+            f"{brief.drug.counter_ion} is excluded by the brief, yet it is the "
+            "counter-ion of the drug"
+        )
+    return list(dict.fromkeys(found))
+
+
+def _osmolality_warnings(case: Case, candidates: Sequence[Candidate]) -> list[str]:
+    """Name the candidates whose whole product lies outside the osmolality limits."""
+    limits = case.brief.tonicity
+    low, high = limits.low_mosm_kg, limits.high_mosm_kg
+    placed = [
+        c for c in candidates if c.rank is not None and c.osmolality_mosm_kg is not None
+    ]
+    found = []
+    for what, limit, outside in (
+        ("above", high, [c for c in placed if _over(c, high)]),
+        ("below", low, [c for c in placed if _under(c, low)]),
+    ):
+        if not outside or limit is None:
+            continue
+        values = sorted(c.osmolality_mosm_kg or 0.0 for c in outside)
+        span = f"{values[0]:.0f}"
+        if f"{values[-1]:.0f}" != span:
+            span += f" to {values[-1]:.0f}"
+        names = [c.name for c in outside]
+        who = "every candidate" if len(outside) == len(placed) else listed(names)
+        found.append(
+            f"the whole product has {span} mosmol/kg, {what} the limit {limit:.0f}: "
+            f"{who}"
+        )
+    return found
+
+
+def _over(candidate: Candidate, high_mosm_kg: float | None) -> bool:
+    value = candidate.osmolality_mosm_kg
+    return value is not None and high_mosm_kg is not None and value > high_mosm_kg + 0.5
+
+
+def _under(candidate: Candidate, low_mosm_kg: float | None) -> bool:
+    value = candidate.osmolality_mosm_kg
+    return value is not None and low_mosm_kg is not None and value < low_mosm_kg - 0.5
 
 
 def precedent_file_warnings(library: Library) -> list[str]:

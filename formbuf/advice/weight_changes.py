@@ -8,33 +8,12 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
 
+from formbuf.advice.chance_records import WeightChange
 from formbuf.advice.results import Candidate
 
 #: Differences of ln desirability below this do not count.
 LEVEL = 1e-9
-
-
-@dataclass(frozen=True, slots=True)
-class WeightChange:
-    """How far one weight must move for another candidate to lead.
-
-    Attributes
-    ----------
-    criterion : str
-    weight : float
-        As given.
-    needed : float or None
-        Weight at which the lead changes; None where no weight of zero or more does it.
-    new_lead : str or None
-        Key of the candidate that leads beyond it.
-    """
-
-    criterion: str
-    weight: float
-    needed: float | None
-    new_lead: str | None
 
 
 def weight_changes(

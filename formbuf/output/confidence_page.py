@@ -19,12 +19,12 @@ from formbuf.output.page import (
 )
 
 if TYPE_CHECKING:
+    from formbuf.advice.chance_records import Chance
     from formbuf.advice.confidence_records import (
         CandidateConfidence,
         Confidence,
         Interval,
     )
-    from formbuf.advice.rank_chances import Chance
     from formbuf.advice.results import Candidate, Shortlist
 
 #: Ranks whose chances are shown.

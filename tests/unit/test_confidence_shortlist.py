@@ -8,9 +8,9 @@ import numpy as np
 import pytest
 from confidence_support import brief, library, result
 
+from formbuf.advice.chance_records import Chance
 from formbuf.advice.confidence import with_confidence
 from formbuf.advice.draw_candidate import draw_candidate, prepare_draws
-from formbuf.advice.rank_chances import Chance
 from formbuf.advice.results import Candidate, Shortlist
 from formbuf.advice.sampling import Sampler
 from formbuf.advice.shortlist import shortlist
