@@ -1,6 +1,7 @@
 """Seeded normal draws, one Latin hypercube over named inputs.
 
-Each input has its own stream, made from the seed and its name: an input draws the
+Each input is a column of a Latin hypercube (McKay, Beckman & Conover 1979), made by
+scipy. It has its own stream, made from the seed and its name: an input draws the
 same numbers whatever else is drawn and in whatever order. Within an input the draws
 are the midpoints of equal shares of the normal distribution in a random order, so
 that means and small chances settle faster than with independent draws.
@@ -70,8 +71,12 @@ class Sampler:
         """Return the share (0 to count - 1) in which each draw of an input lies."""
         kept = self._orders.get(name)
         if kept is None:
+            from scipy.stats import qmc
+
             stream = np.random.Generator(np.random.PCG64(self._entropy(name)))
-            kept = stream.permutation(self.count)
+            column = qmc.LatinHypercube(d=1, scramble=False, rng=stream)
+            shares = column.random(self.count).ravel()
+            kept = np.floor(shares * self.count).astype(np.intp)
             self._orders[name] = kept
         if self.mirrored:
             return self.count - 1 - kept
