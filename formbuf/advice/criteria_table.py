@@ -22,6 +22,10 @@ CRITERIA = (
 )
 
 
+#: Settings among the classes that are no desirability.
+NO_DESIRABILITY = ("eased_at_or_below_mmol_l", "above_usual_exponent")
+
+
 @dataclass(frozen=True, slots=True)
 class Anchors:
     """Ends of a desirability.
@@ -86,6 +90,7 @@ def settings_for(library: Library, brief: ProductBrief) -> Settings:
     if not any(weights.values()):
         msg = "ranking.weights: every weight is zero, allowed at least one above zero"
         raise InputError(msg)
+    _check_desirabilities(table)
     anchors = {}
     for name, entry in table["anchors"].items():
         chosen = entry
@@ -113,6 +118,35 @@ def settings_for(library: Library, brief: ProductBrief) -> Settings:
         str(table["basis"]),
         table,
     )
+
+
+def _check_desirabilities(table: Mapping[str, Any]) -> None:
+    """Refuse desirabilities outside 0 to 1 and anchors that do not rise.
+
+    Ours are sound; a user's own table may not be.
+    """
+    where = "criteria.toml"
+    if not 0.0 < float(table["floor_value"]) < 1.0:
+        msg = f"{where}: floor_value {table['floor_value']:g}, allowed above 0, below 1"
+        raise InputError(msg)
+    for section in ("frozen_drift", "compatibility", "precedent"):
+        for key, value in table[section].items():
+            if key in NO_DESIRABILITY or not isinstance(value, int | float):
+                continue
+            if not 0.0 < value <= 1.0:
+                msg = f"{where}: {section}.{key} {value:g}, allowed above 0, up to 1"
+                raise InputError(msg)
+    for name, entry in table["anchors"].items():
+        for chosen in (entry, {**entry, **entry.get("vehicle", {})}):
+            if entry["scale"] not in ("linear", "log"):
+                msg = f"{where}: anchors.{name}.scale {entry['scale']!r}, allowed linear, log"
+                raise InputError(msg)
+            if "floor" in chosen and not chosen["full"] < chosen["floor"]:
+                msg = (
+                    f"{where}: anchors.{name}: floor {chosen['floor']:g} must lie above "
+                    f"full {chosen['full']:g}, since less of it is better"
+                )
+                raise InputError(msg)
 
 
 def _known(name: str, where: str) -> None:

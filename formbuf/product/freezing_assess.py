@@ -316,7 +316,11 @@ def _computed_reason(paths: tuple[FreezingPath, ...], shift: float | None) -> st
     crystallising = paths[0]
     onset = crystallising.event("onset")
     if onset is None:
-        return "no salt reaches its solubility at the temperatures asked for"
+        moved = "" if shift is None else f", which moves pH by {shift:+.1f}"
+        return (
+            "no salt reaches its solubility at the temperatures asked for; the liquid "
+            f"only concentrates{moved}"
+        )
     words = "" if shift is None else f", up to {shift:+.1f} pH against unfrozen liquid"
     solid = onset.solid.replace("_", " ")
     return f"{solid} may crystallise from {onset.temperature_c:.1f} C{words}"

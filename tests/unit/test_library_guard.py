@@ -16,7 +16,7 @@ TABLES = {
 }
 # rows, and sums of the columns with numbers
 EXPECTED: dict[str, tuple[int, dict[str, float]]] = {
-    "sources.csv": (285, {}),
+    "sources.csv": (289, {}),
     "species.csv": (51, {}),
     "ions.csv": (6, {"charge": 7.0, "molar_mass_g_mol": 227.301}),
     "neutrals.csv": (7, {"molar_mass_g_mol": 1397.283}),
@@ -84,6 +84,7 @@ EXPECTED: dict[str, tuple[int, dict[str, float]]] = {
     ),
     "water_properties.csv": (184, {"temperature_c": 3898.0, "value": 10332134.895989}),
     "conflicts.csv": (66, {}),
+    "ingredient_names.csv": (51, {}),
     "checks/ph_standards.csv": (
         443,
         {"temperature_c": 15475.0, "value": 2437.256, "decimals": 1139.0},

@@ -191,10 +191,6 @@ def test_references_bear_dois_where_known(name: str) -> None:
     assert all(re.match(r"^10\.\d{4,9}/\S+$", doi) for doi in dois)
 
 
-@pytest.mark.xfail(
-    strict=True,
-    reason="works cited for the desirability and for ice are not in sources.csv yet",
-)
 def test_every_work_behind_the_method_is_in_the_table_of_sources() -> None:
     from formbuf.library import load_library
     from formbuf.report.data import METHOD_SOURCES

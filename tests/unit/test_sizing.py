@@ -201,6 +201,31 @@ def test_the_load_budget_marks_defaults():
     assert not case().loads.all_default
 
 
+def test_a_trace_of_carbon_dioxide_leaves_default_loads_default():
+    """In plastic at pH 4.5 air gives 0.0002 mmol/L; at pH 9.5 it is the larger load."""
+    plastic = {"type": "plastic_ampoule", "gas_permeable": True}
+
+    def at(ph):
+        window = {"target": ph, "low": ph - 0.3, "high": ph + 0.3}
+        return case(ph=window, loads={}, container=plastic).loads
+
+    assert any("carbon dioxide" in item.name for item in at(4.5).items)
+    assert at(4.5).all_default
+    assert not at(9.5).all_default
+
+
+def test_an_exclusion_looks_at_what_the_buffer_is_made_of():
+    """Glycine set with sodium hydroxide brings sodium, whatever its system's salts."""
+    glycine = LIBRARY.systems["glycine"]
+
+    assert screens.exclusion_screens(
+        LIBRARY, glycine, ["sodium"], ["glycine", "sodium_hydroxide"]
+    )
+    assert not screens.exclusion_screens(
+        LIBRARY, glycine, ["chloride"], ["glycine", "sodium_hydroxide"]
+    )
+
+
 def test_exclusions_by_species_system_and_ion():
     """Sodium excluded drops every sodium salt and no amine hydrochloride."""
     phosphate = LIBRARY.systems["sodium_phosphate"]
@@ -224,3 +249,5 @@ def test_a_storage_window_screens_only_where_it_is_given():
 
     assert screens.storage_window_screen(free, (State(),)) is None
     assert "6.60 at 5 C" in screens.storage_window_screen(tight, (State(),)).text
+    State.ph = 6.2041
+    assert "6.2041 at 5 C" in screens.storage_window_screen(tight, (State(),)).text
