@@ -27,6 +27,8 @@ EXIT_INPUT = 3
 EXIT_KNOWLEDGE = 4
 EXIT_CONVERGENCE = 5
 EXIT_BUG = 70
+#: Shortest text that counts as part of a name [characters].
+LEAST_PART = 4
 
 
 class FormbufError(Exception):
@@ -116,5 +118,12 @@ class OutputError(FormbufError, OSError):
 
 
 def nearest(name: str, known: Iterable[str], count: int = 3) -> list[str]:
-    """Return the known names most like ``name``, best first."""
-    return difflib.get_close_matches(name, list(known), n=count, cutoff=0.6)
+    """Return the known names most like ``name``, best first.
+
+    Where none is like it, those that contain it.
+    """
+    names = list(known)
+    found = difflib.get_close_matches(name, names, n=count, cutoff=0.6)
+    if not found and len(name) >= LEAST_PART:
+        found = [one for one in names if name.casefold() in one.casefold()][:count]
+    return found

@@ -38,7 +38,7 @@ def own_burden(case: Case, product: Product) -> tuple[Exposure, ...]:
     """Count what the buffer's own materials bring per dose, and titratable acidity."""
     litres = case.brief.dose.volume_ml / 1000.0
     content: dict[str, float] = dict.fromkeys(COUNTED, 0.0)
-    for key, mmol_l in product.buffer_mmol_l.items():
+    for key, mmol_l in product.own_mmol_l.items():
         for component, count in case.library.find_material(key).contents.items():
             if component in content:
                 content[component] += count * mmol_l
@@ -63,6 +63,7 @@ def _against(case: Case, row: Exposure, limit: DoseLimit | None) -> Exposure:
         limit_share=amount / limit.value,
         limit_basis=limit.basis,
         limit_source=limit.sources[0] if limit.sources else "",
+        limit_use=limit.use,
     )
 
 

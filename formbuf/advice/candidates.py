@@ -94,6 +94,7 @@ def judge_at(
         system.species,
         case.background.agent,
         case.law,
+        bare_titrant_mmol_l=case.bare_titrant_mmol_l,
     )
     return judge_product(
         case,

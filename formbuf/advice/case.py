@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Mapping
+from dataclasses import dataclass, field, replace
 
 from formbuf.advice.criteria_table import Settings, settings_for
+from formbuf.advice.evaluate import NO_TITRANT
 from formbuf.advice.loads import LoadBudget, load_budget
 from formbuf.advice.sizing import sizing_background
 from formbuf.chemistry.osmolality import OsmoticLaw
+from formbuf.errors import InputError
 from formbuf.library import Library
 from formbuf.library.records import System
 from formbuf.library.rule_tables import Rulebook
@@ -18,7 +21,7 @@ from formbuf.product.fact_values import Situation
 from formbuf.product.facts import FactSheet, prepare, product_facts
 from formbuf.product.osmotics import osmotic_law
 from formbuf.product.product_brief import ProductBrief
-from formbuf.product.recipe import Background
+from formbuf.product.recipe import Background, make
 
 
 @dataclass(frozen=True)
@@ -42,6 +45,9 @@ class Case:
         Facts of the product that rules and limits test.
     thorough : bool
         Whether candidates that a screen dropped are assessed on freezing too.
+    bare_titrant_mmol_l : mapping of material to float
+        Strong acid or base that brings the product without buffer to its pH [mmol/L];
+        no burden of a buffer.
     """
 
     library: Library
@@ -55,6 +61,7 @@ class Case:
     situation: Situation
     facts: FactSheet
     thorough: bool = False
+    bare_titrant_mmol_l: Mapping[str, float] = field(default_factory=dict)
 
 
 def case_for(completed: Completed, *, thorough: bool = False) -> Case:
@@ -83,7 +90,22 @@ def case_for(completed: Completed, *, thorough: bool = False) -> Case:
         situation,
         product_facts(situation),
         thorough,
+        _bare_titrant_mmol_l(library, brief, background, law),
     )
+
+
+def _bare_titrant_mmol_l(
+    library: Library, brief: ProductBrief, background: Background, law: OsmoticLaw
+) -> Mapping[str, float]:
+    bare = replace(background, agent=None, target_mosm_kg=None)
+    at = brief.ph.measure_temperature_c
+    try:
+        made = make(
+            library, library.systems["none"], 1.0, brief.ph.target, at, bare, law
+        )
+    except InputError:  # out of reach without a buffer: nothing is shared
+        return NO_TITRANT
+    return {key: float(mmol_l) for key, mmol_l in made.buffer_mmol_l.items()}
 
 
 def considered_systems(case: Case) -> list[System]:

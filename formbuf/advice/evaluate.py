@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from types import MappingProxyType
 
 import numpy as np
 from numpy.typing import NDArray
@@ -31,6 +32,9 @@ from formbuf.product.recipe import Recipe, weighed
 Array = NDArray[np.float64]
 
 SLOPE_STEP_K = 0.5
+STRONG_BASES = ("sodium_hydroxide", "potassium_hydroxide")
+STRONG_ACIDS = ("hydrochloric_acid",)
+NO_TITRANT: Mapping[str, float] = MappingProxyType({})
 
 
 @dataclass(frozen=True)
@@ -41,6 +45,10 @@ class Product:
     ----------
     mixture : Mixture
     buffer_mmol_l : mapping of material to float
+        All that is added for the pH, titrant included.
+    own_mmol_l : mapping of material to float
+        Of that, what the buffer answers for: less the titrant that the product would
+        need without any buffer.
     composition : tuple of Weighed
         The buffer's own materials.
     tonicity_fill : Weighed or None
@@ -57,6 +65,7 @@ class Product:
 
     mixture: Mixture
     buffer_mmol_l: Mapping[str, float]
+    own_mmol_l: Mapping[str, float]
     composition: tuple[Weighed, ...]
     tonicity_fill: Weighed | None
     states: tuple[LiquidState, ...]
@@ -77,6 +86,8 @@ def evaluate(
     species: tuple[str, ...],
     agent: str | None,
     law: OsmoticLaw,
+    *,
+    bare_titrant_mmol_l: Mapping[str, float] = NO_TITRANT,
 ) -> Product:
     """Describe a made product.
 
@@ -95,6 +106,9 @@ def evaluate(
     agent : str or None
         Tonicity agent.
     law : OsmoticLaw
+    bare_titrant_mmol_l : mapping of material to float
+        What brings the product without buffer to its pH, as of a drug given as the
+        free acid; no burden of the buffer.
 
     Returns
     -------
@@ -113,8 +127,9 @@ def evaluate(
     measured = whole.solve(t)
     osmol = whole.osmolality(t, measured, law)
     alone = 0.0
-    if buffer_mmol_l:
-        bare = mixture(library, buffer_mmol_l)
+    own_mmol_l = less_titrant(buffer_mmol_l, bare_titrant_mmol_l)
+    if own_mmol_l:
+        bare = mixture(library, own_mmol_l)
         alone = float(bare.osmolality(t, bare.solve(t), law).osmolality_mosm_kg)
     first = whole.index(species[0]) if species else -1
     parts = component_capacity_mol_kg_ph(solution)[measure]
@@ -125,6 +140,7 @@ def evaluate(
     return Product(
         whole,
         buffer_mmol_l,
+        own_mmol_l,
         tuple(Weighed(*row) for row in weighed(library, buffer_mmol_l)),
         fill,
         states,
@@ -135,6 +151,24 @@ def evaluate(
         float(titratable_acidity_mmol_l(whole, t, measured.ph)),
         float(parts[first]) / own_total if own_total > 0.0 and first >= 0 else 0.0,
     )
+
+
+def less_titrant(
+    buffer_mmol_l: Mapping[str, float], bare_titrant_mmol_l: Mapping[str, float]
+) -> dict[str, float]:
+    """Materials of a buffer without the titrant that the product needs anyway.
+
+    One hydroxide stands for another.
+    """
+    own = dict(buffer_mmol_l)
+    for kind in (STRONG_BASES, STRONG_ACIDS):
+        left = sum(bare_titrant_mmol_l.get(key, 0.0) for key in kind)
+        for key in kind:
+            taken = min(own.get(key, 0.0), left)
+            left -= taken
+            if taken > 0.0:
+                own[key] -= taken
+    return {key: mmol_l for key, mmol_l in own.items() if mmol_l > 1e-9}
 
 
 def _states(

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
 
 from formbuf.advice.freeze_thaw_evidence import PublishedChange, RankedObservation
 from formbuf.advice.frozen import Frozen
@@ -11,8 +12,12 @@ from formbuf.advice.results import Weighed
 from formbuf.constants import EXTRAPOLATION_LIMIT_C
 from formbuf.library import Library
 from formbuf.library.records import System
+from formbuf.notebook import html_table
 from formbuf.product.product_brief import ProductBrief
 from formbuf.product.product_parts import Assumption
+
+if TYPE_CHECKING:
+    import pandas as pd
 
 #: Where a product that is kept liquid is taken to, if it froze by accident [C].
 ACCIDENT_C = EXTRAPOLATION_LIMIT_C
@@ -126,6 +131,47 @@ class FreezeThaw:
     systems: tuple[FreezeThawSystem, ...]
     left_out: tuple[str, ...] = ()
     warnings: tuple[str, ...] = ()
+
+    @property
+    def table(self) -> pd.DataFrame:
+        """One row per point of each path as a pandas table, units in the names."""
+        import pandas as pd
+
+        rows = [
+            {
+                "system": s.key,
+                "assumption": path.assumption,
+                "temperature_c": point.temperature_c,
+                "ph": point.ph,
+                "ice_fraction": point.ice_fraction,
+                "unfrozen_water_g_kg": point.unfrozen_water_g_kg,
+                "state": point.state,
+            }
+            for s in self.systems
+            for path in s.frozen.assessment.paths
+            for point in path.points
+        ]
+        return pd.DataFrame(rows)
+
+    def __repr__(self) -> str:
+        return (
+            f"<FreezeThaw down to {self.lowest_c:g} C: "
+            f"{', '.join(s.key for s in self.systems)}>"
+        )
+
+    def _repr_html_(self) -> str:
+        """Return what freezing does to each system as a table for a notebook."""
+        rows = [
+            {
+                "system": s.key,
+                "concentration_mmol_l": s.concentration_mmol_l,
+                "ph_before": s.ph_before,
+                "verdict": s.verdict,
+            }
+            for s in self.systems
+        ]
+        title = f"On freezing, down to {self.lowest_c:g} C"
+        return html_table(title, rows, ".table holds the paths as a pandas table.")
 
 
 @dataclass(frozen=True, slots=True)

@@ -46,9 +46,11 @@ class Made:
 def made_of(c: Candidate) -> Made:
     """Return a shortlisted candidate as the product that it is."""
     assert c.mixture is not None
+    amounts = {w.material: w.mmol_l for w in c.composition}
     product = Product(
         c.mixture,
-        {w.material: w.mmol_l for w in c.composition},
+        amounts,
+        amounts,
         c.composition,
         c.tonicity_fill,
         c.states,

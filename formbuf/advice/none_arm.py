@@ -204,6 +204,7 @@ def _made(case: Case, system: System, carried: float | None) -> Candidate:
         (),
         case.background.agent,
         case.law,
+        bare_titrant_mmol_l=buffer,
     )
     known = carried is not None
     judged: dict[str, CriterionResult] = {}

@@ -212,7 +212,17 @@ def _evaluated(
         for key, mmol_l in own.materials.items()
         if key in TITRANTS or set(library.find_material(key).contents) & set(species)
     }
-    product = evaluate(library, case.brief, buffer, 0.0, whole, species, None, case.law)
+    product = evaluate(
+        library,
+        case.brief,
+        buffer,
+        0.0,
+        whole,
+        species,
+        None,
+        case.law,
+        bare_titrant_mmol_l=case.bare_titrant_mmol_l,
+    )
     rows = weighed(library, own.materials)
     return replace(product, composition=tuple(Weighed(*row) for row in rows))
 

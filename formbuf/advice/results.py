@@ -10,6 +10,7 @@ from formbuf.advice.criteria_table import Settings
 from formbuf.advice.loads import LoadBudget
 from formbuf.library import Library
 from formbuf.library.records import System
+from formbuf.notebook import html_table, shown
 from formbuf.product.composition import Mixture
 from formbuf.product.product_brief import ProductBrief
 from formbuf.product.product_parts import Assumption
@@ -89,6 +90,7 @@ class Exposure:
     limit_share: float | None = None
     limit_basis: str = ""
     limit_source: str = ""
+    limit_use: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -195,6 +197,14 @@ class Candidate:
         """First liquid state of a kind."""
         return next((s for s in self.states if kind in s.kinds), None)
 
+    def __repr__(self) -> str:
+        place = "" if self.rank is None else f", place {self.rank}"
+        figure = f", desirability {shown(self.desirability)}" if self.criteria else ""
+        return (
+            f"<Candidate {self.key} {self.concentration_mmol_l:g} mmol/L: "
+            f"{self.standing}{place}{figure}>"
+        )
+
 
 @dataclass(frozen=True)
 class Shortlist:
@@ -269,6 +279,26 @@ class Shortlist:
         """One row per candidate as a pandas table, units in the column names."""
         import pandas as pd
 
+        return pd.DataFrame(self._rows()).astype({"rank": "Int64"})
+
+    def __repr__(self) -> str:
+        return (
+            f"<Shortlist: {self.verdict} {len(self.ranked)} ranked, "
+            f"{len(self.dropped)} screened out>"
+        )
+
+    def _repr_html_(self) -> str:
+        """Return the ranked candidates as a table for a notebook."""
+        left_out = ("required_mmol_l", "buffer_osmolality_mosm_kg", "screened_out_by")
+        rows = [
+            {k: v for k, v in row.items() if k not in left_out}
+            for row in self._rows()
+            if row["rank"] is not None
+        ]
+        note = f"{len(self.dropped)} screened out; .table holds all as a pandas table."
+        return html_table(self.verdict, rows, note)
+
+    def _rows(self) -> list[dict[str, Any]]:
         rows = []
         for c in self.candidates:
             row: dict[str, Any] = {
@@ -287,4 +317,4 @@ class Shortlist:
             row["limiting"] = c.limiting
             row["screened_out_by"] = "; ".join(s.id for s in c.dropped_by)
             rows.append(row)
-        return pd.DataFrame(rows)
+        return rows

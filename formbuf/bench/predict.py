@@ -9,7 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
-from typing import Literal, get_args
+from typing import TYPE_CHECKING, Literal, get_args
 
 import numpy as np
 from numpy.typing import NDArray
@@ -32,8 +32,12 @@ from formbuf.constants import (
 from formbuf.errors import InputError
 from formbuf.library import Library
 from formbuf.library.records import Material
+from formbuf.notebook import html_table
 from formbuf.product.composition import Mixture, ladder_of, mixture
 from formbuf.product.osmotics import osmotic_law
+
+if TYPE_CHECKING:
+    import pandas as pd
 
 Array = NDArray[np.float64]
 Basis = Literal["solution", "molal"]
@@ -131,6 +135,40 @@ class Prediction:
     water_kg_l: float | None
     open_to_carbon_dioxide_pa: float | None
     states: tuple[PredictedState, ...]
+
+    @property
+    def table(self) -> pd.DataFrame:
+        """One row per temperature as a pandas table, units in the column names."""
+        import pandas as pd
+
+        return pd.DataFrame(self._rows())
+
+    def __repr__(self) -> str:
+        found = ", ".join(
+            f"pH {s.ph:.2f} at {s.temperature_c:g} C" for s in self.states
+        )
+        return f"<Prediction of {self._composition()}: {found}>"
+
+    def _repr_html_(self) -> str:
+        """Return the states as a table for a notebook."""
+        return html_table(f"Prediction of {self._composition()}", self._rows())
+
+    def _composition(self) -> str:
+        per = "kg" if self.basis == "molal" else "L"
+        return ", ".join(f"{a.mmol:g} mmol/{per} {a.material}" for a in self.added)
+
+    def _rows(self) -> list[dict[str, float | None]]:
+        return [
+            {
+                "temperature_c": s.temperature_c,
+                "ph": s.ph,
+                "ionic_strength_mol_kg": s.ionic_strength_mol_kg,
+                "capacity_mmol_kg_ph": s.capacity_mmol_kg_ph,
+                "osmolality_mosm_kg": s.osmolality_mosm_kg,
+                "carbon_dioxide_pa": s.carbon_dioxide_pa,
+            }
+            for s in self.states
+        ]
 
 
 def predict(

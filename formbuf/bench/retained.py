@@ -13,6 +13,9 @@ from formbuf.library import Library
 from formbuf.product.background import DRUG
 from formbuf.product.composition import Extra
 
+#: A thinner retentate is no retentate [mg/mL].
+LEAST_PROTEIN_MG_ML = 1e-3
+
 
 @dataclass(frozen=True, slots=True)
 class Protein:
@@ -69,8 +72,10 @@ def protein_from_options(
     InputError
         For a concentration or molar mass that cannot be meant.
     """
-    if not 0.0 < mg_ml <= 500.0:
-        msg = f"--protein-mg-ml: value {mg_ml:g}, allowed above 0 to 500"
+    if not LEAST_PROTEIN_MG_ML <= mg_ml <= 500.0:
+        msg = (
+            f"--protein-mg-ml: value {mg_ml:g}, allowed {LEAST_PROTEIN_MG_ML:g} to 500"
+        )
         raise InputError(msg)
     if not 1000.0 <= molar_mass_g_mol <= 1e8:
         msg = f"--molar-mass: value {molar_mass_g_mol:g} g/mol, allowed 1000 to 1e8"

@@ -28,6 +28,7 @@ USUAL_HALF_WIDTH_PH = 0.5
 #: Allowance for setting the pH of a batch where nobody states one (judgement).
 USUAL_TOLERANCE_PH = 0.1
 CONCENTRATION_LIMIT_MMOL_L = 2000.0
+MOST_DOSE_ML = 20000.0
 
 
 @dataclass(frozen=True)
@@ -206,6 +207,9 @@ def bench_from_options(
         if prepare_temperature_c is None
         else prepare_temperature_c
     )
+    _check("--prepare-at", prepare, -20.0, 121.0)
+    if dose_volume_ml is not None:
+        _check("--dose-ml", dose_volume_ml, 0.0, MOST_DOSE_ML)
     low, high = window_ph or (ph - USUAL_HALF_WIDTH_PH, ph + USUAL_HALF_WIDTH_PH)
     if not low < ph < high:
         msg = f"--window: {low:g} to {high:g} does not hold the target {ph:g}"

@@ -1,8 +1,11 @@
-"""``formbuf brief``: check a brief, or print its schema."""
+"""``formbuf brief``: ask for a brief, check one, or print the schema of the file."""
 
 from __future__ import annotations
 
 from pathlib import Path
+from typing import Annotated
+
+import typer
 
 from formbuf.cli.frame import command_app, examples
 from formbuf.cli.options import (
@@ -14,7 +17,37 @@ from formbuf.cli.options import (
     open_library,
 )
 
-app = command_app("Check a product brief, or print the schema of its file.")
+app = command_app("Write a product brief by questions, check one, or print its schema.")
+
+
+@app.command(
+    "new", epilog=examples("formbuf brief new", "formbuf brief new nasal_spray.toml")
+)
+def new_command(
+    brief: Annotated[
+        str, typer.Argument(metavar="[BRIEF]", help="File to write.")
+    ] = "brief.toml",
+    knowledge: KnowledgeOption = None,
+) -> None:
+    """Ask for a brief in plain words and write it.
+
+    Asks only what matters for the product; "?" explains, "back" goes back, an empty
+    line means unknown. Needs a terminal.
+    """
+    import sys
+
+    from formbuf.cli import brief_new
+    from formbuf.cli.emit import output_width, put
+
+    path = Path(brief)
+    brief_new.require_terminal(sys.stdin, sys.stdout)
+    brief_new.refuse_existing(path)
+    brief_new.talk(
+        open_library(knowledge),
+        path,
+        brief_new.terminal_ask,
+        lambda text: put(brief_new.wrapped_text(text, output_width(sys.stdout))),
+    )
 
 
 @app.command("check", epilog=examples("formbuf brief check examples/antibody.toml"))

@@ -13,6 +13,7 @@ from formbuf.cli.options import (
     JsonOption,
     KnowledgeOption,
     OutputOption,
+    PrecedentOption,
     open_library,
 )
 
@@ -40,6 +41,7 @@ def explain_command(
         ),
     ],
     knowledge: KnowledgeOption = None,
+    precedent: PrecedentOption = None,
     format_: FormatOption = None,
     json_: JsonOption = False,
     output: OutputOption = None,
@@ -56,7 +58,7 @@ def explain_command(
     from formbuf.product.brief import read_brief
 
     read = read_brief(brief)
-    result, candidate, notes = judged(read, open_library(knowledge), system)
+    result, candidate, notes = judged(read, open_library(knowledge, precedent), system)
     emit(explain_page(result, candidate, notes), target)
 
 

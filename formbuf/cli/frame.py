@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import importlib
+import os
 from typing import TYPE_CHECKING, Any
 
 import typer
@@ -13,6 +14,8 @@ from formbuf.cli.registry import COMMANDS
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
+#: Set by the shell while it asks for completions.
+COMPLETING = "_FORMBUF_COMPLETE"
 #: Settings of every command: help has two names, and its lines may be long.
 SETTINGS = {"help_option_names": ["-h", "--help"], "max_content_width": 88}
 
@@ -56,6 +59,10 @@ class LazyGroup(TyperGroup):
             module = importlib.import_module(entry.module)
             command = typer.main.get_command(module.app)
             command.name = cmd_name
+            if COMPLETING in os.environ:
+                from formbuf.cli.complete import attach
+
+                attach(command)
             self.commands[cmd_name] = command
         return self.commands[cmd_name]
 

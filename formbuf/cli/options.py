@@ -34,10 +34,23 @@ KnowledgeOption = Annotated[
         help="Directory with tables of your own, laid over ours.",
     ),
 ]
+PrecedentOption = Annotated[
+    str | None,
+    typer.Option(
+        "--precedent",
+        metavar="FILE",
+        help="Your copy of a regulator's list of inactive ingredients, CSV.",
+    ),
+]
 
 
-def open_library(knowledge: str | None) -> Library:
-    """Load the knowledge, with the user's tables over it."""
+def open_library(knowledge: str | None, precedent: str | None = None) -> Library:
+    """Load the knowledge, with the user's tables and list of ingredients over it."""
     from formbuf.library import load_library
 
-    return load_library(None if knowledge is None else Path(knowledge))
+    library = load_library(None if knowledge is None else Path(knowledge))
+    if precedent is None:
+        return library
+    from formbuf.library.inactive_ingredients import with_precedent_file
+
+    return with_precedent_file(library, Path(precedent))

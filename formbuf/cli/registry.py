@@ -34,4 +34,5 @@ COMMANDS: Mapping[str, Entry] = {
     "brief": Entry("formbuf.cli.brief", "Write, check or describe a brief."),
     "knowledge": Entry("formbuf.cli.knowledge", "Look into the tables and audit them."),
     "qualify": Entry("formbuf.cli.qualify", "Qualify this installation."),
+    "guide": Entry("formbuf.cli.guide", "Show short pages to learn it from."),
 }

@@ -21,7 +21,7 @@ from formbuf.library.audit_materials import (
     MaterialCheck,
 )
 from formbuf.library.check_schemas import CHECKS
-from formbuf.library.formulas import molar_mass_g_mol
+from formbuf.library.formulas import count_atoms, molar_mass_g_mol
 from formbuf.library.library import Library
 from formbuf.library.store import TableFaults
 from formbuf.library.tables import Row, Schema
@@ -68,8 +68,8 @@ def check_materials(library: Library, rows: Iterable[Row], faults: TableFaults) 
         library.species,
         library.ions,
         library.neutrals,
-        _formulas(library, schemas.IONS),
-        _formulas(library, schemas.NEUTRALS),
+        _formulas(library, schemas.IONS, faults),
+        _formulas(library, schemas.NEUTRALS, faults),
     ).check(rows, faults)
 
 
@@ -112,6 +112,8 @@ def unused_sources(library: Library) -> list[str]:
     for name, data in library.store.files():
         if name.endswith(".csv"):
             used |= _cited(data)
+        elif name.endswith(".toml"):
+            used.update(_WORD.findall(data.decode("utf-8-sig")))
     return [
         f"{row.where('id')}: source {row.text('id')!r} is used nowhere, "
         "allowed sources that a row refers to"
@@ -147,8 +149,17 @@ def _table_faults(library: Library, schema: Schema) -> list[str]:
     return []
 
 
-def _formulas(library: Library, schema: Schema) -> dict[str, str]:
-    return {row.text("id"): row.text("formula") for row in library.read_table(schema)}
+def _formulas(library: Library, schema: Schema, faults: TableFaults) -> dict[str, str]:
+    """Return the formulas of a table by id; what is none becomes a fault."""
+    found = {}
+    for row in library.read_table(schema):
+        try:
+            count_atoms(row.text("formula"))
+        except ValueError as error:
+            faults.add(row, "formula", f"{error}, allowed a chemical formula")
+            continue
+        found[row.text("id")] = row.text("formula")
+    return found
 
 
 def _check_component(library: Library, row: Row, faults: TableFaults) -> None:

@@ -20,6 +20,7 @@ from formbuf.library.records import (
     Neutral,
     PartialVolume,
     Precedent,
+    PrecedentFile,
     RouteLimit,
     SideChain,
     Source,
@@ -56,6 +57,8 @@ class Library:
         By route, solute, id, group and quantity.
     store : Store
         Reads further tables on demand.
+    precedent_file : PrecedentFile or None
+        The user's list of inactive ingredients that lies over the precedents.
     """
 
     version: str
@@ -77,6 +80,15 @@ class Library:
     diluents: Mapping[str, Diluent]
     side_chains: Mapping[str, SideChain]
     store: Store = field(repr=False)
+    precedent_file: PrecedentFile | None = None
+
+    def __repr__(self) -> str:
+        over = "" if self.overlay is None else f", with {self.overlay} over it"
+        return (
+            f"<Library {self.version}: {len(self.species)} species, "
+            f"{len(self.materials)} materials, {len(self.systems)} systems, sha256 "
+            f"{self.sha256[:12]}{over}>"
+        )
 
     def get_species(self, name: str, *, where: str = "") -> Species:
         """Return a species by id, or raise `UnknownNameError`."""

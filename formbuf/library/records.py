@@ -245,7 +245,9 @@ class Precedent:
 
     Concentrations in mmol/L. ``monographs`` maps ``usp_nf``, ``ph_eur`` and ``jp`` to
     ``yes``, ``no`` or ``unknown`` (not looked up). The species ``none`` stands for the
-    product without an added buffer.
+    product without an added buffer. ``daily_mmol`` is the largest amount a day that a
+    user's file lists; ``listed`` says which row of it replaced the ceiling, and what
+    stood there before.
     """
 
     species: str
@@ -264,6 +266,8 @@ class Precedent:
     monograph_basis: Basis
     locator: str = ""
     overlay: bool = False
+    daily_mmol: float | None = None
+    listed: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -381,3 +385,31 @@ class Conflict:
     verdict: str
     note: str
     overlay: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class PrecedentFile:
+    """A user's copy of a regulator's list of inactive ingredients, and what it gave.
+
+    Parameters
+    ----------
+    path : str
+    sha256 : str
+    rows : int
+        Rows of the file.
+    matched : int
+        Rows whose CAS number or name is that of a material of ours.
+    unmatched : int
+    unused : mapping of str to int
+        Matched rows that gave no figure, by the reason.
+    replaced : int
+        Precedents whose ceiling, daily amount or level comes from the file.
+    """
+
+    path: str
+    sha256: str
+    rows: int
+    matched: int
+    unmatched: int
+    unused: Mapping[str, int]
+    replaced: int

@@ -356,6 +356,16 @@ CONFLICTS = Schema(
     ("id",),
 )
 
+INGREDIENT_NAMES = Schema(
+    "ingredient_names.csv",
+    (
+        Column("name", required=True),
+        Column("material", "id", required=True, refers_to="materials.csv"),
+        basis(),
+    ),
+    ("name",),
+)
+
 #: Tables that every calculation needs, in the order in which they are read.
 EAGER = (
     SOURCES,
@@ -377,4 +387,4 @@ EAGER = (
     SIDE_CHAINS,
 )
 #: Tables read on demand.
-LAZY = (WATER_PROPERTIES, CONFLICTS)
+LAZY = (WATER_PROPERTIES, CONFLICTS, INGREDIENT_NAMES)

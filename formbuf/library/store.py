@@ -16,11 +16,20 @@ from pathlib import Path
 from typing import Any
 
 from formbuf.errors import InputError, KnowledgeError, nearest
+from formbuf.library.overlay_settings import setting_faults
 from formbuf.library.tables import Faults, Row, Schema, read_table
 
 #: Files that make up the knowledge and enter its checksum.
 _SUFFIXES = (".csv", ".toml")
 _EXTRA = ("VERSION",)
+#: An overlay holds tables and little else: more or larger files are a mistake.
+MOST_OVERLAY_ENTRIES = 1000
+LARGEST_OVERLAY_BYTES = 2_000_000
+#: Directories below one another that are looked into.
+DEEPEST = 3
+NAMES_TOLD = 3
+#: Faults of an overlay that are told at once.
+FAULTS_TOLD = 100
 
 
 @functools.cache
@@ -64,8 +73,11 @@ class TableFaults:
                 hint="Run `formbuf knowledge check` after mending the lines named.",
             )
         if self.overlay:
+            told = self.overlay.lines[:FAULTS_TOLD]
+            if len(self.overlay.lines) > FAULTS_TOLD:
+                told.append(f"and {len(self.overlay.lines) - FAULTS_TOLD} more faults")
             raise InputError(
-                "\n".join(self.overlay.lines),
+                "\n".join(told),
                 hint="Mend the lines named in the overlay, or run without it.",
             )
 
@@ -127,26 +139,68 @@ class Store:
         if theirs is None:
             return settings
         try:
-            return _lay_over(settings, _parse_toml(theirs))
+            laid = _parse_toml(theirs)
         except ValueError as error:
             message = f"{self.overlay}/{name}:1:file: {error}"
             raise InputError(message) from error
+        faults = [f"{self.overlay}/{name}: {f}" for f in setting_faults(settings, laid)]
+        if faults:
+            raise InputError("\n".join(faults[:FAULTS_TOLD]))
+        return _lay_over(settings, laid)
 
     def unknown_overlay_files(self) -> list[str]:
-        """Return a fault for each overlay table whose name matches none of ours."""
+        """Return a fault for each overlay table whose name matches none of ours.
+
+        Raises
+        ------
+        InputError
+            If the overlay is no place for tables: very many or very large files, or
+            something that is no file under the name of a table.
+        """
         if self.overlay is None:
             return []
         known = [name for name, _ in self.files()]
-        found = []
-        for path in sorted(self.overlay.rglob("*")):
-            name = path.relative_to(self.overlay).as_posix()
-            if path.suffix not in _SUFFIXES or name in known:
-                continue
-            near = nearest(name, known) or known
-            found.append(
-                f"{path}:1:file: no table of this name, allowed {', '.join(near)}"
+        files_here = self.overlay_files()
+        if not files_here:
+            msg = (
+                f"overlay {str(self.overlay)!r} holds no table, allowed tables of ours"
             )
+            raise InputError(msg, hint="Their names: `formbuf knowledge list`.")
+        found = []
+        for name, path in files_here:
+            if name in known:
+                continue
+            near = nearest(name, known, NAMES_TOLD)
+            allowed = ", ".join(near) or "a name of `formbuf knowledge list`"
+            found.append(f"{path}:1:file: no table of this name, allowed {allowed}")
         return found
+
+    def overlay_files(self) -> list[tuple[str, Path]]:
+        """Return name and path of every table of the overlay, sorted by name.
+
+        Raises
+        ------
+        InputError
+            As `unknown_overlay_files`.
+        """
+        if self.overlay is None:
+            return []
+        found = []
+        try:
+            for number, (name, path) in enumerate(_entries(self.overlay, "", 1)):
+                if number >= MOST_OVERLAY_ENTRIES:
+                    msg = (
+                        f"overlay {str(self.overlay)!r} holds more than "
+                        f"{MOST_OVERLAY_ENTRIES} files, allowed a directory with your "
+                        "tables"
+                    )
+                    raise InputError(msg)
+                if name.endswith(_SUFFIXES):
+                    _check_overlay_file(path)
+                    found.append((name, path))
+        except OSError as error:
+            raise _unreadable(self.overlay, error) from error
+        return sorted(found)
 
     def files(self) -> Iterator[tuple[str, bytes]]:
         """Yield name and content of every file of knowledge, sorted by name."""
@@ -158,7 +212,12 @@ class Store:
 
     def overlay_sha256(self) -> str:
         """Return the checksum over the overlay, empty without one."""
-        return _digest(sorted(_walk(self.overlay, ""))) if self.overlay else ""
+        if self.overlay is None:
+            return ""
+        try:
+            return _digest((name, p.read_bytes()) for name, p in self.overlay_files())
+        except OSError as error:
+            raise _unreadable(self.overlay, error) from error
 
     def version(self) -> str:
         """Return the version of our tables."""
@@ -179,7 +238,10 @@ class Store:
     @staticmethod
     def _bytes(root: Traversable, name: str) -> bytes | None:
         place = root.joinpath(*name.split("/"))
-        return place.read_bytes() if place.is_file() else None
+        try:
+            return place.read_bytes() if place.is_file() else None
+        except OSError as error:
+            raise _unreadable(place, error) from error
 
 
 def _merge(
@@ -192,6 +254,33 @@ def _merge(
         name: object = tuple(row.values[column] for column in key) if key else index
         rows[name] = row
     return tuple(rows.values())
+
+
+def _entries(folder: Path, prefix: str, depth: int) -> Iterator[tuple[str, Path]]:
+    """Yield every entry of a directory, those of the ones below it too, not too deep."""
+    for path in sorted(folder.iterdir()):
+        name = f"{prefix}{path.name}"
+        if not path.is_dir():
+            yield name, path
+        elif depth < DEEPEST and not path.name.startswith((".", "_")):
+            yield from _entries(path, f"{name}/", depth + 1)
+
+
+def _check_overlay_file(path: Path) -> None:
+    """Refuse what is no file, or larger than a table can be."""
+    if not path.is_file():
+        msg = f"{path}:1:file: is no regular file, allowed a table"
+        raise InputError(msg)
+    size = path.stat().st_size
+    if size > LARGEST_OVERLAY_BYTES:
+        most = LARGEST_OVERLAY_BYTES / 1e6
+        msg = f"{path}:1:file: holds {size / 1e6:.0f} MB, allowed up to {most:.0f} MB"
+        raise InputError(msg)
+
+
+def _unreadable(place: Traversable, error: OSError) -> InputError:
+    reason = error.strerror or str(error)
+    return InputError(f"{place}: cannot be read ({reason})")
 
 
 def _walk(root: Traversable, prefix: str) -> Iterator[tuple[str, bytes]]:
@@ -216,7 +305,11 @@ def _digest(files_: Iterable[tuple[str, bytes]]) -> str:
 def _parse_toml(data: bytes) -> dict[str, Any]:
     import tomllib
 
-    return tomllib.loads(data.decode("utf-8-sig"))
+    try:
+        return tomllib.loads(data.decode("utf-8-sig"))
+    except RecursionError as error:
+        msg = "lists or tables are nested too deeply to read"
+        raise ValueError(msg) from error
 
 
 def _lay_over(below: dict[str, Any], above: dict[str, Any]) -> dict[str, Any]:

@@ -23,6 +23,8 @@ from typing import Literal
 Kind = Literal["text", "id", "ids", "number", "integer", "flag", "counts", "amounts"]
 Cell = str | float | int | bool | tuple[str, ...] | Mapping[str, float] | None
 
+#: Faults that are told before the rest is only said to be there.
+MOST_FAULTS = 5000
 _NUMBER = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)([eE][+-]?\d+)?")
 _INTEGER = re.compile(r"[+-]?\d+")
 _ID = re.compile(r"[a-z][a-z0-9_]*")
@@ -147,8 +149,11 @@ class Faults:
     lines: list[str] = field(default_factory=list)
 
     def add(self, place: str, what: str) -> None:
-        """Note one fault at ``file:line:column``."""
-        self.lines.append(f"{place}: {what}")
+        """Note one fault at ``file:line:column``; after very many, only that."""
+        if len(self.lines) < MOST_FAULTS:
+            self.lines.append(f"{place}: {what}")
+        elif len(self.lines) == MOST_FAULTS:
+            self.lines.append(f"{place}: and more faults like these, not told")
 
     def __bool__(self) -> bool:
         return bool(self.lines)
@@ -228,7 +233,7 @@ def _decode(data: bytes, file: str, faults: Faults) -> str | None:
         line = before.count(b"\n") + 1
         start = before.rfind(b"\n") + 1
         head = data.split(b"\n", 1)[0].decode("latin-1").strip().split(",")
-        index = len(next(csv.reader([before[start:].decode("latin-1")]), [""])) - 1
+        index = before.count(b",", start)
         column = head[index] if line > 1 and index < len(head) else "header"
         byte = data[error.start]
         faults.add(

@@ -24,7 +24,7 @@ class Needed(NamedTuple):
 
 NEEDED: Mapping[Kind, Needed] = {
     "xlsx": Needed("a workbook", "openpyxl", "xlsx", "csv"),
-    "docx": Needed("a Word document", "docx", "report", "md"),
+    "docx": Needed("a Word document", "docx", "", "md"),
 }
 ENDINGS: Mapping[str, Kind] = {".xlsx": "xlsx", ".docx": "docx"}
 
@@ -48,8 +48,9 @@ def require(kind: Kind) -> None:
             f"--output: {needed.noun} needs the package {needed.module}, which is not "
             "installed"
         )
+        what = f"formbuf[{needed.extra}]" if needed.extra else "formbuf"
         hint = (
-            f"Run `pip install 'formbuf[{needed.extra}]'`, or give a file that ends in "
+            f"Run `pip install '{what}'`, or give a file that ends in "
             f".{needed.instead}."
         )
         raise UsageError(msg, hint=hint)

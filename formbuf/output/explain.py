@@ -23,6 +23,9 @@ from formbuf.output.page import (
     section,
 )
 
+#: A titratable acidity below this is the noise of the solution [mmol/L].
+NEXT_TO_NOTHING = 1e-4
+
 
 def explain_page(
     result: Shortlist, candidate: Candidate, notes: Sequence[str] = ()
@@ -157,13 +160,22 @@ def _size(result: Shortlist, c: Candidate) -> Grid:
         ("ceiling of the route", _amount(c.ceiling_mmol_l, "mmol/L")),
         ("osmolality of the product", _amount(c.osmolality_mosm_kg, "mosmol/kg")),
         ("osmolality of the buffer", _amount(c.buffer_osmolality_mosm_kg, "mosmol/kg")),
-        ("strong base to pH 7.4", _amount(c.titratable_acidity_mmol_l, "mmol/L")),
+        _to_physiological(c.titratable_acidity_mmol_l),
         (
             "tonicity aimed at",
             _amount(result.brief.tonicity.target_mosm_kg, "mosmol/kg"),
         ),
     )
     return Grid((Column("Size", keep=True), Column("Value")), rows)
+
+
+def _to_physiological(acidity_mmol_l: float | None) -> tuple[str, str]:
+    """Return which titrant brings the product to pH 7.4, and how much of it."""
+    which = "acid" if (acidity_mmol_l or 0.0) < -NEXT_TO_NOTHING else "base"
+    amount = None if acidity_mmol_l is None else abs(acidity_mmol_l)
+    if amount is not None and amount < NEXT_TO_NOTHING:
+        amount = 0.0
+    return f"strong {which} to pH 7.4", _amount(amount, "mmol/L")
 
 
 def _amount(value: float | None, unit: str) -> str:

@@ -69,6 +69,14 @@ def _paths(found: dict[str, Any]) -> Grid:
     return Grid(tuple(columns), tuple(rows))
 
 
+def _limit(row: Exposure) -> str:
+    """Return a limit; one that only decides what the leaflet says is marked."""
+    if row.limit is None:
+        return ABSENT
+    label = ", for labelling" if row.limit_use == "label" else ""
+    return f"{significant(row.limit)} {row.limit_unit}{label}"
+
+
 def exposures_grid(exposures: Sequence[Exposure]) -> Grid:
     """Return what a dose and a day bring of each substance, against its limit."""
     rows = tuple(
@@ -78,9 +86,7 @@ def exposures_grid(exposures: Sequence[Exposure]) -> Grid:
             significant(row.mmol_day),
             significant(row.mg_dose),
             significant(row.mg_day),
-            f"{significant(row.limit)} {row.limit_unit}"
-            if row.limit is not None
-            else ABSENT,
+            _limit(row),
             ABSENT
             if row.limit_share is None
             else f"{significant(100 * row.limit_share)} %",

@@ -205,10 +205,12 @@ def _common(result: Shortlist) -> Items:
 
 def _missing(result: Shortlist) -> Items:
     """Return the questions whose answers could change the order, worst first."""
+    names = {c.key: c.name for c in result.candidates} | {"none": "no added buffer"}
     return Items(
         tuple(
             f"{m.fact.question} ({m.fact.held_in}; could "
-            f"{'exclude' if m.could_exclude else 'lower'} {_some(m.systems)})"
+            f"{'exclude' if m.could_exclude else 'lower'} "
+            f"{_some([names[key] for key in m.systems])})"
             for m in result.missing_facts
         )
     )
@@ -222,7 +224,12 @@ def _some(names: Sequence[str]) -> str:
 
 
 def _notes(shown: Sequence[Candidate]) -> Items:
-    return Items(tuple(f"{c.name}: {note}" for c in shown for note in c.notes))
+    """Return what is noted of the candidates, each note once."""
+    by_note: dict[str, list[str]] = {}
+    for c in shown:
+        for note in c.notes:
+            by_note.setdefault(note, []).append(c.name)
+    return Items(tuple(f"{_some(names)}: {note}" for note, names in by_note.items()))
 
 
 def _set_aside(result: Shortlist) -> Items:

@@ -102,12 +102,14 @@ def _table(grid: Grid, room: int) -> RenderableType:
         header_style="",
     )
     shown = columns_shown(grid, room)
+    least = {index: _least(grid, index, room) for index in shown}
+    fits = sum(least.values()) + GAP * (len(shown) - 1) <= room
     for index in shown:
         column = grid.columns[index]
         table.add_column(
             Text(_header(column, room)),
             justify=column.align,
-            min_width=_least(grid, index, room),
+            min_width=least[index] if fits else None,
             overflow="fold",
             vertical="top",
         )

@@ -45,9 +45,10 @@ def standing_words(candidate: Candidate) -> str:
 
 def made(candidate: Candidate) -> str:
     """Return amount and name of a candidate: 10 mmol/L sodium phosphate."""
-    if not candidate.concentration_mmol_l:
+    amount = f"{candidate.concentration_mmol_l:g} mmol/L"
+    if not candidate.concentration_mmol_l or amount in candidate.name:
         return candidate.name
-    return f"{candidate.concentration_mmol_l:g} mmol/L {candidate.name}"
+    return f"{amount} {candidate.name}"
 
 
 def listed(names: Sequence[str]) -> str:

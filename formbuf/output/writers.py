@@ -180,7 +180,7 @@ def write_bytes(path: Path, data: bytes) -> None:
         _copy_mode(target, Path(temporary))
         Path(temporary).replace(target)
         temporary = None
-    except (OSError, ValueError) as error:
+    except (OSError, ValueError, RuntimeError) as error:
         if isinstance(error, OutputError):
             raise
         reason = getattr(error, "strerror", None) or str(error)

@@ -15,6 +15,8 @@ from dataclasses import dataclass, field
 
 from formbuf.product.brief_origin import Location
 
+#: Longest dotted key that is followed; a brief has four parts at most.
+DEEPEST_KEY = 40
 _BLANK = " \t"
 _LINE_END = "\r\n"
 _BARE_STOP = frozenset(" \t\r\n=.[]{},#\"'")
@@ -151,6 +153,8 @@ class _Scanner:
             self._skip_blanks()
             if self._peek() != ".":
                 return keys
+            if len(keys) == DEEPEST_KEY:
+                raise _LostError
             self.position += 1
 
     def _key(self) -> str:

@@ -265,9 +265,13 @@ def _close(
             break
     if not done.all():
         worst = float(ph[~done].flat[0])
+        titrants = (
+            library.find_material(key).name
+            for key in (system.acid_titrant, system.base_titrant)
+        )
         msg = (
-            f"{system.id} cannot be brought to pH {worst:.2f} with its materials and "
-            f"{system.acid_titrant} or {system.base_titrant}"
+            f"{system.name} cannot be brought to pH {worst:.2f} with its materials and "
+            f"{' or '.join(titrants)}"
         )
         raise InputError(msg)
     return {k: np.maximum(v, 0.0) for k, v in result.items() if np.any(v > 1e-9)}

@@ -70,7 +70,7 @@ BAD = [
             "--volume",
             "1",
         ),
-        ("tris_acetate", "cannot be brought to pH 1.00", "acetic_acid_glacial"),
+        ("tris acetate", "cannot be brought to pH 1.00", "acetic acid glacial"),
     ),
     _sheet("volume_zero", "--volume", "0", words=("--volume", "value 0 L")),
     _sheet("volume_minus", "--volume", "-2", words=("--volume", "value -2 L")),
@@ -233,7 +233,7 @@ BAD = [
             "--molar-mass",
             "150000",
         ),
-        ("--protein-mg-ml", "900", "allowed above 0 to 500"),
+        ("--protein-mg-ml", "900", "allowed 0.001 to 500"),
     ),
     Bad(
         "protein_small",

@@ -12,7 +12,14 @@ from cli_runner import EXAMPLES, formbuf
 ANTIBODY = str(EXAMPLES / "antibody.toml")
 BULK = str(EXAMPLES / "antibody_bulk.toml")
 PHOSPHATE = ("--system", "sodium_phosphate", "--concentration", "50", "--ph", "7.4")
-HISTIDINE = ("--system", "histidine_hydrochloride", "--concentration", "20", "--ph", "6")
+HISTIDINE = (
+    "--system",
+    "histidine_hydrochloride",
+    "--concentration",
+    "20",
+    "--ph",
+    "6",
+)
 PROTEIN = ("--charge", "20", "--protein-mg-ml", "150", "--molar-mass", "148000")
 
 COMMANDS = {
@@ -99,7 +106,9 @@ def test_a_brief_proposes_the_concentration_of_its_shortlist() -> None:
 
     assert sheet["inputs"]["concentration_mmol_l"] == entry["concentration_mmol_l"]
     for row in entry["composition"]:
-        assert lines[row["material"]]["mmol_l"] == pytest.approx(row["mmol_l"], rel=1e-6)
+        assert lines[row["material"]]["mmol_l"] == pytest.approx(
+            row["mmol_l"], rel=1e-6
+        )
         assert lines[row["material"]]["weigh_g"] == pytest.approx(row["g_l"], rel=1e-6)
 
 

@@ -83,6 +83,7 @@ def test_header_names_the_knowledge() -> None:
             "sha256": library.sha256,
             "overlay": None,
             "overlay_sha256": None,
+            "precedent_file": None,
         },
     }
 

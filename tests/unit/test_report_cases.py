@@ -18,6 +18,9 @@ from report_support import (
 
 from formbuf.report.content import Document, OpenPoint
 
+#: Long: left out of the everyday run.
+pytestmark = pytest.mark.slow
+
 SPECIES = [
     "phosphate",
     "citrate",

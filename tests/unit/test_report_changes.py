@@ -24,6 +24,9 @@ BRIEF = {
 }
 HEAVY = {**BRIEF, "loads": {"acid_mmol_l": 2.0, "base_mmol_l": 2.0}}
 
+#: Long: left out of the everyday run.
+pytestmark = pytest.mark.slow
+
 
 def _moved(changes: Changes, system: str) -> Any:
     return next(m for m in changes.moved if m.system == system)

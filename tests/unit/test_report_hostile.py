@@ -18,6 +18,9 @@ from formbuf.report.drawing import label
 from formbuf.report.write_html import _css
 from formbuf.report.write_markdown import escaped, opened
 
+#: Long: left out of the everyday run.
+pytestmark = pytest.mark.slow
+
 EVERY_DAY = ("tags", "markdown", "setext", "turned", "long")
 KINDS = [
     name if name in EVERY_DAY else pytest.param(name, marks=pytest.mark.slow)
