@@ -6,7 +6,13 @@ from collections.abc import Sequence
 
 from formbuf.advice.case import Case
 from formbuf.advice.results import Candidate
+from formbuf.advice.wording import plain
 from formbuf.library import Library
+
+#: Kinds of drug whose particles count in the osmolality.
+SMALL_KINDS = ("small_molecule", "peptide")
+#: Titrant of the bare product from which it is the drug's [mmol/L].
+WORTH_A_WORD = 1.0
 
 
 def listed(names: Sequence[str]) -> str:
@@ -57,9 +63,36 @@ def warnings_of(case: Case, candidates: Sequence[Candidate]) -> tuple[str, ...]:
             "no load is expected at all: any buffer carries it, so capacity orders "
             "nothing, and the product without buffer is the one to beat"
         )
+    found += _uncounted_drug(case)
     found += _excluded_but_brought(case)
     found += _osmolality_warnings(case, candidates)
     return tuple(found)
+
+
+def _uncounted_drug(case: Case) -> list[str]:
+    """Say what of the drug is left out of account, or put in for want of a word."""
+    drug = case.brief.drug
+    found = []
+    if (
+        drug.kind in SMALL_KINDS
+        and (drug.concentration_mg_ml or 0.0) > 0.0
+        and drug.concentration_mmol_l is None
+    ):
+        found.append(
+            f"{drug.concentration_mg_ml:g} mg/mL of drug without a molar mass: its "
+            "particles are missing from the osmolality, and what fills it up is too "
+            "much"
+        )
+    neutral = {k: v for k, v in case.bare_titrant_mmol_l.items() if v >= WORTH_A_WORD}
+    if drug.pka and drug.counter_ion is None and neutral:
+        material, mmol_l = max(neutral.items(), key=lambda row: row[1])
+        name = case.library.find_material(material).name
+        found.append(
+            "no counter-ion of the drug is stated, so it is made up from the free acid "
+            f"or base: {plain(mmol_l)} mmol/L of {name} goes to it, with a buffer or "
+            "without; if it is weighed as a salt, state drug.counter_ion"
+        )
+    return found
 
 
 def _excluded_but_brought(case: Case) -> list[str]:

@@ -70,7 +70,7 @@ def _rows(context: Any) -> Iterator[str]:
 
 
 def _topics(_: Any) -> Iterator[str]:
-    from formbuf.cli.guide import TOPICS
+    from formbuf.cli.registry import TOPICS
 
     yield from TOPICS
 

@@ -11,19 +11,9 @@ import typer
 
 from formbuf.cli.frame import command_app, examples
 from formbuf.cli.options import OutputOption
+from formbuf.cli.registry import TOPICS
 
 app = command_app()
-
-#: Pages in the order in which they are read, and what each is about.
-TOPICS = {
-    "getting-started": "from nothing to a shortlist in a few minutes",
-    "shortlist": "reading a shortlist",
-    "model": "the model and its limits",
-    "freezing": "frozen and dried products",
-    "report": "the rationale and the record",
-    "own-data": "your own data: species, tables, titrations, lists",
-    "troubleshooting": "when something is refused",
-}
 
 
 @app.command("guide", epilog=examples("formbuf guide", "formbuf guide getting-started"))

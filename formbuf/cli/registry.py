@@ -36,3 +36,14 @@ COMMANDS: Mapping[str, Entry] = {
     "qualify": Entry("formbuf.cli.qualify", "Qualify this installation."),
     "guide": Entry("formbuf.cli.guide", "Show short pages to learn it from."),
 }
+
+#: Pages of the guide in the order in which they are read, and what each is about.
+TOPICS = {
+    "getting-started": "from nothing to a shortlist in a few minutes",
+    "shortlist": "reading a shortlist",
+    "model": "the model and its limits",
+    "freezing": "frozen and dried products",
+    "report": "the rationale and the record",
+    "own-data": "your own data: species, tables, titrations, lists",
+    "troubleshooting": "when something is refused",
+}

@@ -236,3 +236,20 @@ def test_titrant_of_the_bare_product_is_taken_off_whatever_the_hydroxide() -> No
     assert less_titrant({"hydrochloric_acid": 12.0}, {"hydrochloric_acid": 10.0}) == {
         "hydrochloric_acid": 2.0
     }
+
+
+def test_a_drug_that_is_not_counted_is_named() -> None:
+    """Milligrams without a molar mass bring no particles; that is said."""
+    drug = {"kind": "small_molecule", "concentration_mg_ml": 60.0}
+    said = [w for w in run(drug=drug).warnings if "without a molar mass" in w]
+    known = run(drug=drug | {"molar_mass_g_mol": 300.0}).warnings
+    assert len(said) == 1
+    assert not any("without a molar mass" in w for w in known)
+
+
+def test_a_drug_without_a_counter_ion_is_said_to_be_the_free_form() -> None:
+    ph = {"target": 7.4, "low": 6.9, "high": 7.9}
+    free = run(ph=ph, drug=ACID_DRUG).warnings
+    salt = run(ph=ph, drug=ACID_DRUG | {"counter_ion": "sodium"}).warnings
+    assert any("mmol/L of sodium hydroxide goes to it" in w for w in free)
+    assert not any("goes to it" in w for w in salt)
