@@ -279,7 +279,7 @@ def _screens(
 
 
 def _headspace_pa(case: Case) -> float:
-    """Carbon dioxide that the headspace may hold: as stated, or as a flush leaves."""
+    """Return the carbon dioxide a headspace may hold: as stated, or a default."""
     if "carbon_dioxide.pressure_pa" in case.situation.assumed:
         return case.settings.number("carbon_dioxide", "headspace_pa")
     return case.brief.carbon_dioxide.pressure_pa

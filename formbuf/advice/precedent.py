@@ -29,12 +29,16 @@ class SpeciesStanding:
         Its amount over the nominal concentration of the system.
     row : Precedent or None
     kind_row : KindPrecedent or None
+    route_largest_mmol_l : float
+        Highest ceiling of any established species on the route: what a species
+        without a ceiling of its own is never taken beyond.
     """
 
     species: str
     share: float
     row: Precedent | None
     kind_row: KindPrecedent | None
+    route_largest_mmol_l: float = float("inf")
 
 
 def standings(
@@ -45,12 +49,19 @@ def standings(
 ) -> tuple[SpeciesStanding, ...]:
     """Look up every species of a system on the route and for the kind of product."""
     route = brief.product.precedent_route
+    known = [
+        row.ceiling_mmol_l
+        for (_, at), row in library.precedents.items()
+        if at == route and row.level == "established" and row.ceiling_mmol_l
+    ]
+    largest = max(known, default=float("inf"))
     return tuple(
         SpeciesStanding(
             species,
             shares.get(species, 1.0),
             library.precedents.get((species, route)),
             kind_row(library, brief, species),
+            largest,
         )
         for species in system.species
     )
@@ -92,7 +103,7 @@ def ceiling_mmol_l(
     fallback = float(settings.table["anchors"]["capacity"]["fallback_ceiling"])
     ceilings = [
         (
-            fallback
+            min(fallback, s.route_largest_mmol_l)
             if s.row is None or s.row.ceiling_mmol_l is None
             else s.row.ceiling_mmol_l
         )

@@ -152,10 +152,12 @@ def carbon_dioxide_screen(
 ) -> Screen | None:
     """Carbon dioxide that a carbonate buffer would need above it.
 
-    ``allowed_pa`` is the pressure stated for the headspace, or what a flushed
-    headspace can be taken to hold.
+    ``allowed_pa`` is the pressure stated for the headspace, or what a headspace that
+    nobody flushed can be taken to hold. A product kept dried is a powder until use.
     """
     if "carbonate" not in system.species:
+        return None
+    if brief.is_dried and not brief.liquid_storage_temperatures_c:
         return None
     t = brief.ph.measure_temperature_c
     total = sum(

@@ -143,7 +143,7 @@ class Store:
         except ValueError as error:
             message = f"{self.overlay}/{name}:1:file: {error}"
             raise InputError(message) from error
-        faults = [f"{self.overlay}/{name}: {f}" for f in setting_faults(settings, laid)]
+        faults = [f"{self.overlay}/{name}:{f}" for f in setting_faults(settings, laid)]
         if faults:
             raise InputError("\n".join(faults[:FAULTS_TOLD]))
         return _lay_over(settings, laid)

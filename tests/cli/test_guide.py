@@ -18,6 +18,7 @@ README = (ROOT / "README.md").read_text("utf-8")
 DOCUMENTS = {**PAGES, "README.md": README}
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("name", DOCUMENTS)
 def test_commands_print_what_the_page_shows(
     name: str, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
