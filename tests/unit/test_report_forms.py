@@ -24,6 +24,9 @@ from report_support import (
 
 from formbuf.report.content import every_section
 
+#: Long: left out of the everyday run.
+pytestmark = pytest.mark.slow
+
 LARGEST_BYTES = 1_000_000
 ROOT = Path(__file__).resolve().parent.parent.parent
 
