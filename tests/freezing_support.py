@@ -8,14 +8,11 @@ from functools import cache
 
 from reference_tables import library
 
-from formbuf.chemistry.freezing import freeze_path
 from formbuf.chemistry.freezing_records import (
     Assumption,
     Brine,
     FreezingContents,
     FreezingPath,
-    IonAmount,
-    NeutralAmount,
 )
 from formbuf.chemistry.ionization import Ladder
 from formbuf.chemistry.pitzer import Coefficient, Pair, PitzerSet
@@ -28,9 +25,8 @@ from formbuf.product.freezing_data import (
     solubility_rows,
     surroundings,
 )
-from formbuf.product.osmotics import osmotic_law
+from formbuf.qualify import brines
 
-CHARGES = {"sodium": 1, "potassium": 1, "chloride": -1}
 DSP = "disodium_hydrogen_phosphate_dodecahydrate"
 MSP = "sodium_dihydrogen_phosphate_dihydrate"
 MKP = "potassium_dihydrogen_phosphate"
@@ -62,23 +58,11 @@ def contents(
     glass_transition_c: float | None = None,
 ) -> FreezingContents:
     """Contents from component names: ladders, strong ions and sugars sort themselves."""
-    species = [n for n in amounts_mol_kg if n in library().species]
-    slopes = osmotic_law(library()).neutrals
-    return FreezingContents(
-        tuple(ladder(n) for n in species),
-        tuple(amounts_mol_kg[n] for n in species),
-        tuple(
-            IonAmount(n, CHARGES[n], x)
-            for n, x in amounts_mol_kg.items()
-            if n in CHARGES
-        ),
-        tuple(
-            NeutralAmount(n, x, slopes.get(n, 0.0))
-            for n, x in amounts_mol_kg.items()
-            if n in library().neutrals
-        ),
-        ph=ph,
-        base_ion=(base, 1),
+    return brines.contents(
+        library(),
+        amounts_mol_kg,
+        ph,
+        base=base,
         prepare_temperature_c=prepare_temperature_c,
         glass_transition_c=glass_transition_c,
     )
@@ -94,11 +78,14 @@ def path(
     with_brine: Brine | None = None,
 ) -> FreezingPath:
     """A path with one of the library's brines; titrated with that brine's cation."""
-    return freeze_path(
-        contents(amounts_mol_kg, ph, base=model),
+    return brines.path(
+        library(),
+        amounts_mol_kg,
+        ph,
         temperatures_c,
+        model=model,
         assumption=assumption,
-        brine=with_brine or brine(model),
+        with_brine=with_brine,
     )
 
 

@@ -112,6 +112,13 @@ class PredictedState:
     notes: tuple[str, ...]
 
 
+#: What a table of a prediction shows.
+SHOWN = (
+    *("temperature_c", "ph", "ionic_strength_mol_kg", "capacity_mmol_kg_ph"),
+    *("osmolality_mosm_kg", "carbon_dioxide_pa"),
+)
+
+
 @dataclass(frozen=True, slots=True)
 class Prediction:
     """What a composition shows.
@@ -144,10 +151,8 @@ class Prediction:
         return pd.DataFrame(self._rows())
 
     def __repr__(self) -> str:
-        found = ", ".join(
-            f"pH {s.ph:.2f} at {s.temperature_c:g} C" for s in self.states
-        )
-        return f"<Prediction of {self._composition()}: {found}>"
+        found = (f"pH {s.ph:.2f} at {s.temperature_c:g} C" for s in self.states)
+        return f"<Prediction of {self._composition()}: {', '.join(found)}>"
 
     def _repr_html_(self) -> str:
         """Return the states as a table for a notebook."""
@@ -158,17 +163,7 @@ class Prediction:
         return ", ".join(f"{a.mmol:g} mmol/{per} {a.material}" for a in self.added)
 
     def _rows(self) -> list[dict[str, float | None]]:
-        return [
-            {
-                "temperature_c": s.temperature_c,
-                "ph": s.ph,
-                "ionic_strength_mol_kg": s.ionic_strength_mol_kg,
-                "capacity_mmol_kg_ph": s.capacity_mmol_kg_ph,
-                "osmolality_mosm_kg": s.osmolality_mosm_kg,
-                "carbon_dioxide_pa": s.carbon_dioxide_pa,
-            }
-            for s in self.states
-        ]
+        return [{name: getattr(s, name) for name in SHOWN} for s in self.states]
 
 
 def predict(

@@ -5,6 +5,7 @@ Lines are read and written through two functions, so that a test can play the us
 
 from __future__ import annotations
 
+import os
 from collections.abc import Callable
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -31,13 +32,16 @@ LEAST_WIDTH = 40
 
 
 def refuse_existing(path: Path) -> None:
-    """Refuse a file that is already there.
+    """Refuse a file that is already there, or that could not be written at the end.
 
     Raises
     ------
     UsageError
-        It exists.
+        It exists, or its folder does not, or may not be written to.
     """
+    if not path.parent.is_dir() or not os.access(path.parent, os.W_OK):
+        msg = f"{path}: there is no folder {path.parent} that can be written to"
+        raise UsageError(msg)
     if path.exists() or path.is_symlink():
         msg = f"{path}: is already there, allowed a new file"
         raise UsageError(msg, hint="Name another file, or move this one away.")
@@ -122,11 +126,16 @@ def _go_through(interview: Interview, ask: Ask, say: Say, first: int = 0) -> Non
 
 def _take(interview: Interview, line: str, say: Say) -> None:
     """Give an answer to the interview, or say why it does not fit."""
+    question = interview.current()
     try:
         interview.answer(line)
     except InputError as error:
         say(error.message.replace("brief: ", ""))
         say(error.hint or "Type ? to have the question explained.")
+        return
+    taken = interview.answers.get(question.key) if question else None
+    if question and question.choices and taken and str(taken) != line.strip():
+        say(f"(taken as {taken if isinstance(taken, str) else ', '.join(taken)})")
 
 
 def worded(question: Question, left: int) -> str:

@@ -91,6 +91,34 @@ class InactiveFile:
     rows: tuple[Listed, ...]
 
 
+@dataclass(frozen=True, slots=True)
+class PrecedentFile:
+    """A user's copy of a regulator's list of inactive ingredients, and what it gave.
+
+    Parameters
+    ----------
+    path : str
+    sha256 : str
+    rows : int
+        Rows of the file.
+    matched : int
+        Rows whose CAS number or name is that of a material of ours.
+    unmatched : int
+    unused : mapping of str to int
+        Matched rows that gave no figure, by the reason.
+    replaced : int
+        Precedents whose ceiling, daily amount or level comes from the file.
+    """
+
+    path: str
+    sha256: str
+    rows: int
+    matched: int
+    unmatched: int
+    unused: Mapping[str, int]
+    replaced: int
+
+
 def read_inactive_file(path: Path) -> InactiveFile:
     """Read the file; every bad row is told at once.
 

@@ -16,9 +16,14 @@ from dataclasses import dataclass
 from pathlib import Path
 from types import MappingProxyType
 
-from formbuf.library.inactive_file import InactiveFile, Listed, read_inactive_file
+from formbuf.library.inactive_file import (
+    InactiveFile,
+    Listed,
+    PrecedentFile,
+    read_inactive_file,
+)
 from formbuf.library.library import Library
-from formbuf.library.records import Material, Precedent, PrecedentFile, Source
+from formbuf.library.records import Material, Precedent, Source
 from formbuf.library.schemas import INGREDIENT_NAMES
 
 SOURCE_ID = "precedent_file"

@@ -9,6 +9,7 @@ from typing import Any, TypeVar
 
 from formbuf.errors import InputError, UnknownNameError
 from formbuf.library import build, build_small, schemas
+from formbuf.library.inactive_file import PrecedentFile
 from formbuf.library.records import (
     CarbonDioxideValue,
     Conflict,
@@ -20,7 +21,6 @@ from formbuf.library.records import (
     Neutral,
     PartialVolume,
     Precedent,
-    PrecedentFile,
     RouteLimit,
     SideChain,
     Source,

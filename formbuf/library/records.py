@@ -385,31 +385,3 @@ class Conflict:
     verdict: str
     note: str
     overlay: bool = False
-
-
-@dataclass(frozen=True, slots=True)
-class PrecedentFile:
-    """A user's copy of a regulator's list of inactive ingredients, and what it gave.
-
-    Parameters
-    ----------
-    path : str
-    sha256 : str
-    rows : int
-        Rows of the file.
-    matched : int
-        Rows whose CAS number or name is that of a material of ours.
-    unmatched : int
-    unused : mapping of str to int
-        Matched rows that gave no figure, by the reason.
-    replaced : int
-        Precedents whose ceiling, daily amount or level comes from the file.
-    """
-
-    path: str
-    sha256: str
-    rows: int
-    matched: int
-    unmatched: int
-    unused: Mapping[str, int]
-    replaced: int

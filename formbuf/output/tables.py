@@ -102,14 +102,12 @@ def _table(grid: Grid, room: int) -> RenderableType:
         header_style="",
     )
     shown = columns_shown(grid, room)
-    least = {index: _least(grid, index, room) for index in shown}
-    fits = sum(least.values()) + GAP * (len(shown) - 1) <= room
-    for index in shown:
+    for index, width in zip(shown, _widths(grid, shown, room), strict=True):
         column = grid.columns[index]
         table.add_column(
             Text(_header(column, room)),
             justify=column.align,
-            min_width=least[index] if fits else None,
+            width=width,
             overflow="fold",
             vertical="top",
         )
@@ -137,6 +135,34 @@ def columns_shown(grid: Grid, room: int) -> list[int]:
             break
         shown.remove(optional[-1])
     return shown
+
+
+def _widths(grid: Grid, shown: Sequence[int], room: int) -> list[int]:
+    """Return the width of each column: as wide as it is, or pressed until all fit.
+
+    The widest gives first, down to its longest word; where that is not enough, words
+    are broken. The terminal library would crop what does not fit instead.
+    """
+    least = [_least(grid, index, room) for index in shown]
+    widths = [_natural(grid, index, room) for index in shown]
+    for floors in (least, [1] * len(shown)):
+        for _ in range(sum(widths)):
+            if sum(widths) + GAP * (len(shown) - 1) <= room:
+                return widths
+            giving = [i for i, width in enumerate(widths) if width > floors[i]]
+            if not giving:
+                break
+            widths[max(giving, key=lambda i: widths[i])] -= 1
+    return widths
+
+
+def _natural(grid: Grid, index: int, room: int) -> int:
+    """Width that a column takes where there is room [characters]."""
+    from rich.cells import cell_len
+
+    texts = [printable(row[index]) for row in grid.rows]
+    texts += _header(grid.columns[index], room).split("\n")
+    return max(1, *(cell_len(text) for text in texts))
 
 
 def _header(column: Column, room: int) -> str:

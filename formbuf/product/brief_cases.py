@@ -108,6 +108,10 @@ def _case(
         for name in _CONDITIONS
         if not isinstance(row.get(name, []), list)
     )
+    volume = row.get("volume_from_ml", 0.0)
+    is_number = isinstance(volume, int | float) and not isinstance(volume, bool)
+    if not is_number or not 0.0 <= volume < float("inf"):
+        faults.append(f"{where}: volume_from_ml is no number, allowed 0 or more")
     if len(faults) > before:
         return None
     conditions = {name: tuple(row[name]) for name in _CONDITIONS if name in row}
@@ -119,7 +123,7 @@ def _case(
         reason=str(row["reason"]),
         source=str(source),
         conditions={_SINGULAR[name]: words for name, words in conditions.items()},
-        volume_from_ml=float(row.get("volume_from_ml", 0.0)),
+        volume_from_ml=float(volume),
     )
 
 

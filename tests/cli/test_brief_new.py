@@ -118,6 +118,19 @@ def test_an_existing_file_is_left_alone(tmp_path: Path) -> None:
         brief_new.refuse_existing(link)
 
 
+def test_a_folder_that_is_not_there_is_told_before_the_first_question(
+    tmp_path: Path,
+) -> None:
+    with pytest.raises(UsageError, match="no folder"):
+        brief_new.refuse_existing(tmp_path / "no" / "x.toml")
+
+
+def test_what_an_answer_is_taken_as_is_said(tmp_path: Path) -> None:
+    user = _talk(tmp_path / "x.toml", "", "nose", "6", "1", "done", "done")
+    assert "(taken as nasal)" in user.heard
+    assert "(taken as liquid)" in user.heard
+
+
 def test_without_a_terminal_it_refuses() -> None:
     done = formbuf("brief", "new", "x.toml")
     assert done.code == 2

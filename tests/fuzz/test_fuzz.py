@@ -1,6 +1,7 @@
 """Broken briefs, tables, lists, titrations and command lines: never a traceback.
 
-Half an hour of broken inputs is the slow test; the everyday run takes a few hundred.
+Half an hour of broken inputs is run by hand (``-m by_hand``); the everyday run takes a
+few hundred.
 Each prints its counts by kind and exit code.
 """
 
@@ -67,7 +68,7 @@ def test_broken_inputs_everyday(tmp_path: Path) -> None:
     _is_clean(_fuzz(1, EVERYDAY, tmp_path), EVERYDAY)
 
 
-@pytest.mark.slow
+@pytest.mark.by_hand
 @pytest.mark.parametrize("seed", range(100, 110))
 def test_twenty_thousand_broken_inputs(seed: int, tmp_path: Path) -> None:
     _is_clean(_fuzz(seed, CHUNK, tmp_path), CHUNK)

@@ -152,7 +152,7 @@ def fit() -> dict[tuple[str, ...], Fitted]:
             if point.is_fitted and point.observed_osmol_kg <= limit:
                 chosen += [(point, key) for key in keys]
     for point in isotonic_points(ISOTONIC):
-        chosen.append((point, ISOTONIC[point.row["substance"]]))
+        chosen.append((point, ISOTONIC[point.substance]))
     keys = list(dict.fromkeys(key for _, key in chosen))
     values, errors = _solve([p for p, _ in chosen], keys)
     found = {}
@@ -166,7 +166,7 @@ def fit() -> dict[tuple[str, ...], Fitted]:
             len(own),
             max(p.observed_osmol_kg for p in own),
             float(np.sqrt(np.mean(np.square(misses)))),
-            tuple(dict.fromkeys(n for p in own for n in p.row["sources"].split())),
+            tuple(dict.fromkeys(n for p in own for n in p.row.ids("sources"))),
             _locator(own),
         )
     return found
@@ -199,8 +199,8 @@ def _predict(
 
 
 def _locator(own: Sequence[Point]) -> str:
-    names = list(dict.fromkeys(p.row["substance"] for p in own))
-    kind = own[0].row["quantity"].replace("_", " ")
+    names = list(dict.fromkeys(p.substance for p in own))
+    kind = own[0].row.text("quantity").replace("_", " ")
     rows = ", odd rows" if kind != "isotonic concentration" else ""
     return f"{kind}: {' and '.join(names)}{rows}"
 

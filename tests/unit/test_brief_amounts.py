@@ -235,6 +235,13 @@ BROKEN_DEFAULTS = [
         '[[ph.half_width]]\nvalue=1\nunit=""\nbasis="memory"\nreason="y"\nforms="z"\n',
         "forms is no list",
     ),
+    (
+        (
+            '[[ph.half_width]]\nvalue=1\nunit=""\nbasis="memory"\nreason="y"\n'
+            'volume_from_ml="z"\n'
+        ),
+        "volume_from_ml is no number",
+    ),
 ]
 
 

@@ -4,9 +4,10 @@ from __future__ import annotations
 
 import doctest
 import io
+from collections import Counter
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from rich.cells import cell_len
 
@@ -270,3 +271,21 @@ def test_markdown_takes_no_text_for_markup() -> None:
     assert "\\# no heading second line" in text
     assert "- \\*x\\* \\[y\\](z) &lt;b>" in text
     assert "| 1 \\| 2 |" in text
+
+
+@given(
+    st.lists(
+        st.tuples(*[st.text("abc de-(1)µ", max_size=60)] * 4), min_size=1, max_size=4
+    ),
+    st.integers(60, 130),
+)
+@settings(max_examples=150, deadline=None)
+def test_no_text_of_a_table_is_lost(rows: list[tuple[str, ...]], width: int) -> None:
+    columns = (number("mmol/L"), Column("Kept", keep=True), Column("A"), Column("B"))
+    text = to_text([Grid(columns, tuple(rows))], width)
+    assert max(len(line) for line in text.splitlines()) <= width
+    letters = Counter(
+        c for row in rows for cell in row for c in cell if not c.isspace()
+    )
+    printed = Counter(c for line in text.splitlines()[2:] for c in line)
+    assert all(printed[c] >= n for c, n in letters.items() if c != "-")

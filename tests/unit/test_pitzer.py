@@ -7,11 +7,9 @@ import itertools
 import numpy as np
 import pytest
 from freezing_support import brine
-from reference_tables import Residual, checks, largest, library, show, sources
+from reference_tables import library
 
 from formbuf.chemistry.pitzer import (
-    Coefficient,
-    Pair,
     PitzerModel,
     PitzerSet,
     osmotic_coefficient,
@@ -20,17 +18,8 @@ from formbuf.chemistry.pitzer import (
 from formbuf.chemistry.pitzer_mixing import electrostatic_integral
 from formbuf.errors import InputError
 from formbuf.product.freezing_data import pitzer_set, state_names
+from formbuf.qualify.brines import SALTS
 
-SALTS = {
-    "NaCl": ("sodium", "chloride", -1),
-    "KCl": ("potassium", "chloride", -1),
-    "NaH2PO4": ("sodium", "phosphate[-1]", -1),
-    "KH2PO4": ("potassium", "phosphate[-1]", -1),
-    "Na2HPO4": ("sodium", "phosphate[-2]", -2),
-    "K2HPO4": ("potassium", "phosphate[-2]", -2),
-    "HCl": ("hydrogen", "chloride", -1),
-    "NaOH": ("sodium", "hydroxide", -1),
-}
 MIXED = ["hydrogen", "hydroxide", "sodium", "potassium", "chloride"]
 MIXED += ["phosphate[-1]", "phosphate[-2]", "phosphate[-3]", "sucrose"]
 MIXED_CHARGES = [1, -1, 1, 1, -1, -1, -2, -3, 0]
@@ -63,68 +52,6 @@ def _mixed_model(model: str) -> PitzerModel:
         MIXED_CHARGES,
         {"sucrose": 0.1},
     )
-
-
-def _osmotic_rows(status: str) -> list[Residual]:
-    found = []
-    parameters = _at_25c()
-    for row in checks("tonicity.csv"):
-        if row["kind"] != "osmotic_coefficient" or row["status"] != status:
-            continue
-        if row["substance"] not in SALTS:
-            continue
-        m = float(row["molality_mol_kg"])
-        phi = _phi(parameters, row["substance"], m)
-        label = f"{row['substance']} {m:g} mol/kg"
-        found.append(Residual(label, float(row["value"]), phi, sources(row), status))
-    return found
-
-
-def _at_25c() -> PitzerSet:
-    """All salts of Kim & Frederick 1988 at 25 C, chlorides too."""
-    parameters = brine("sodium").parameters
-    assert parameters is not None
-    return PitzerSet("25 C", (*parameters.pairs, *_chlorides()))
-
-
-def _chlorides() -> list[Pair]:
-    """NaCl and KCl of Kim & Frederick 1988, J. Chem. Eng. Data 33, 177."""
-    constant = Coefficient.constant
-    return [
-        Pair(
-            "sodium",
-            "chloride",
-            constant(0.07831),
-            constant(0.2677),
-            constant(0.000864),
-        ),
-        Pair(
-            "potassium",
-            "chloride",
-            constant(0.04874),
-            constant(0.2215),
-            constant(-0.00098),
-        ),
-    ]
-
-
-def test_osmotic_coefficients_computed_elsewhere_from_the_same_parameters() -> None:
-    # May, Rowland, Hefter & Konigsberger 2011, J. Chem. Eng. Data 56, 5066: values of
-    # the same parameters with A_phi 0.3915, four decimals
-    rows = _osmotic_rows("derived")
-    show("osmotic coefficients at 25 C, same parameters", rows, 5)
-
-    assert len(rows) >= 60
-    assert largest(rows) < 1e-4
-
-
-def test_osmotic_coefficients_against_measurements() -> None:
-    # Robinson & Stokes 1959, Electrolyte Solutions, 2nd ed., App. 8
-    rows = _osmotic_rows("published")
-    show("osmotic coefficients at 25 C, measured", rows, 4)
-
-    assert len(rows) >= 25
-    assert largest(rows) < 0.004
 
 
 @pytest.mark.parametrize(
