@@ -16,6 +16,9 @@ from report_support import docx_blocks, html_blocks, markdown_blocks
 from formbuf.cli.registry import COMMANDS
 from formbuf.errors import EXIT_INPUT, EXIT_NO_CANDIDATE, EXIT_USAGE
 
+#: Long: left out of the everyday run.
+pytestmark = pytest.mark.slow
+
 ENZYME = str(EXAMPLES / "enzyme.toml")
 SECONDS_COLD = 4.0
 NO_CANDIDATE = """

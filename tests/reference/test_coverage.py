@@ -19,6 +19,9 @@ from formbuf.library import load_library
 
 sys.path.insert(0, str(Path(__file__).parents[1] / "tools"))
 
+#: Long: left out of the everyday run.
+pytestmark = pytest.mark.slow
+
 LEAST_COVERAGE = 0.90
 RMS_LOW, RMS_HIGH = 0.5, 1.3
 

@@ -23,6 +23,9 @@ from formbuf.advice.sizing import size
 from formbuf.library import Library
 from formbuf.product.brief import complete
 
+#: Long: left out of the everyday run.
+pytestmark = pytest.mark.slow
+
 SPECIES = (
     "histidine",
     "citrate",

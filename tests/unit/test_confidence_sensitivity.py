@@ -24,6 +24,9 @@ from formbuf.output.sensitivity_page import sensitivity_page
 from formbuf.output.writers import render
 from formbuf.product.brief import Completed, complete
 
+#: Long: left out of the everyday run.
+pytestmark = pytest.mark.slow
+
 
 @pytest.fixture(scope="module")
 def completed() -> Completed:
