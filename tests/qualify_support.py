@@ -29,7 +29,7 @@ TELLING = {
     "freezing/phase_points.csv": (("nacl_eutectic",), "temperature_c", "-20.0"),
     "freezing/observations.csv": (("gomez_50_74",), "ph_frozen", "7.9"),
     "precedent.csv": (("histidine", "subcutaneous"), "level", "none"),
-    "systems.csv": (("histidine_hydrochloride",), "role", "research"),
+    "freezing/pitzer.csv": (("beta0", "sodium dihydrogen_phosphate"), "a0", "-0.08"),
     "checks/ph_standards.csv": (("standard_0001",), "value", "5.0"),
     "checks/tonicity.csv": (("tonicity_0002",), "value", "9.0"),
 }

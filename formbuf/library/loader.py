@@ -84,6 +84,9 @@ def _check_overlay(library: Library, tables: build.Tables) -> None:
 
     faults = TableFaults()
     check_materials(library, tables["materials.csv"], faults)
+    # ours are sound by themselves: what does not fit now, the user's rows brought
+    faults.overlay.lines += faults.ours.lines
+    faults.ours.lines.clear()
     faults.raise_if_any()
 
 

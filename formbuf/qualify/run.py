@@ -99,14 +99,23 @@ def qualify(
 def all_groups(library: Library, record: Mapping[str, Any]) -> Iterator[Group]:
     """Yield every group; what cannot be computed becomes one that fails."""
     for name, part in PARTS.items():
-        yield from _guarded(name, part(library, record))
+        yield from _guarded(
+            name, part(library, record), overlaid=library.overlay is not None
+        )
 
 
-def _guarded(name: str, groups: Iterable[Group]) -> Iterator[Group]:
+def _guarded(name: str, groups: Iterable[Group], *, overlaid: bool) -> Iterator[Group]:
+    """Yield groups; what cannot be computed becomes a failing one.
+
+    Rows of published checks that a user has changed may ask for what is not there, a
+    step or a value; without an overlay that would be a bug and keeps its traceback.
+    """
     try:
         yield from groups
-    except FormbufError as error:
-        text = " ".join(error.message.split())
+    except (FormbufError, LookupError, TypeError, ValueError) as error:
+        if not isinstance(error, FormbufError) and not overlaid:
+            raise
+        text = " ".join(str(error).split()) or repr(error)
         case = Case(text, 0.0, 1.0, 0.0, "", "derived")
         yield Group(f"{name} not computed", name, "not computed", "1", (case,))
 

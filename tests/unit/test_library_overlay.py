@@ -7,7 +7,7 @@ from pathlib import Path
 
 import pytest
 
-from formbuf.errors import KnowledgeError
+from formbuf.errors import InputError, KnowledgeError
 from formbuf.library import (
     Column,
     Library,
@@ -209,3 +209,45 @@ def test_row_tells_where_it_stands_and_refuses_the_wrong_kind(
         row.figure("cas")
     with pytest.raises(TypeError, match="not a required whole number"):
         row.integer("cas")
+
+
+def test_what_the_users_rows_make_inconsistent_is_the_users_fault(
+    tmp_path: Path,
+) -> None:
+    """Our materials hold sodium as +1; a row of the user says otherwise."""
+    root = knowledge_root()
+    header, *rows = root.joinpath("ions.csv").read_text("utf-8").splitlines()
+    sodium = next(row for row in rows if row.startswith("sodium,"))
+    changed = sodium.replace("sodium,", "sodium,", 1).replace(",1,", ",2,", 1)
+    assert changed != sodium
+    with pytest.raises(InputError, match=r"materials\.csv:"):
+        overlaid(tmp_path / "own", ions=f"{header}\n{changed}\n")
+
+
+def test_a_folder_without_tables_is_no_overlay(tmp_path: Path) -> None:
+    with pytest.raises(InputError, match="holds no table"):
+        overlaid(tmp_path / "own")
+
+
+@pytest.mark.parametrize(
+    ("text", "said"),
+    [
+        ("floor_value = 0.0\n", "floor_value: 0, allowed a number above 0"),
+        ("floor_value = -1\n", "floor_value: -1, allowed a number above 0"),
+        ("floor_value = nan\n", "floor_value: nan is out of range"),
+        ("floor_valu = 0.1\n", "floor_valu: unknown setting, allowed floor_value"),
+        ("weights = 1\n", "weights: a number, allowed a table"),
+        ('[weights]\ncapacity = "1"\n', "weights.capacity: a text, allowed a number"),
+        ("[sizing]\nweighable_mmol_l = []\n", "an empty list"),
+        ("[sizing]\nweighable_mmol_l = [1, -2]\n", "allowed a number above 0"),
+        ("source = 1\n", "source: a number, allowed a text"),
+        ("a = " + "[" * 5000, "nested too deeply"),
+    ],
+)
+def test_settings_of_the_user_that_fit_none_of_ours(
+    text: str, said: str, tmp_path: Path
+) -> None:
+    (tmp_path / "criteria.toml").write_text(text, "utf-8")
+    with pytest.raises(InputError) as caught:
+        _ = open_library(Store(knowledge_root(), tmp_path)).criteria
+    assert said in caught.value.message

@@ -184,6 +184,23 @@ def test_what_cannot_be_computed_is_a_failing_group(
     assert only.group.cases[0].label == "planted"
 
 
+def test_checks_of_the_user_that_cannot_be_computed_fail(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """A step that the species does not have; without an overlay it would be a bug."""
+    place = tmp_path / "checks" / "pka_by_temperature.csv"
+    place.parent.mkdir()
+    text = (Path(str(knowledge_root())) / "checks" / place.name).read_text("utf-8")
+    header, *rows = text.splitlines()
+    row = next(r for r in rows if r.split(",")[1:3] == ["tris", "1"])
+    place.write_text(f"{header}\n{row.replace(',tris,1,', ',tris,2,')}\n", "utf-8")
+    library = open_library(Store(knowledge_root(), tmp_path))
+    parts = {"pk_series": qualify_run.PARTS["pk_series"]}
+    monkeypatch.setattr(qualify_run, "PARTS", parts)
+    groups = list(qualify_run.all_groups(library, {}))
+    assert "pk_series not computed" in {group.id for group in groups}
+
+
 # --- a change is seen
 
 
