@@ -64,6 +64,7 @@ def freeze_path(
     *,
     assumption: Assumption = "crystallising",
     brine: Brine = EXTENDED_DEBYE_HUCKEL,
+    prepared: Prepared | None = None,
 ) -> FreezingPath:
     """Follow one bounding path from the preparation temperature down.
 
@@ -76,6 +77,9 @@ def freeze_path(
     assumption : {"crystallising", "supersaturated"}
     brine : Brine
         Activity model and solids.
+    prepared : Prepared, optional
+        The liquid before cooling, where it is known: of ``prepare`` with the same
+        contents and brine, with solids for the crystallising path only.
 
     Returns
     -------
@@ -101,7 +105,8 @@ def freeze_path(
         )
         raise InputError(msg)
     with_solids = assumption == "crystallising"
-    prepared = prepare(contents, brine, with_solids=with_solids)
+    if prepared is None:
+        prepared = prepare(contents, brine, with_solids=with_solids)
     run = _Run(prepared, contents, brine, assumption)
     return run.finish(wanted)
 
@@ -148,6 +153,7 @@ def unfrozen_ph(
     temperatures_c: Iterable[float],
     *,
     brine: Brine = EXTENDED_DEBYE_HUCKEL,
+    prepared: Prepared | None = None,
 ) -> tuple[float | None, ...]:
     """Return the pH of the same liquid cooled without ice or salt forming.
 
@@ -156,8 +162,8 @@ def unfrozen_ph(
 
     Parameters
     ----------
-    contents, temperatures_c, brine
-        As in `freeze_path`.
+    contents, temperatures_c, brine, prepared
+        As in `freeze_path`; prepared without solids.
 
     Returns
     -------
@@ -165,7 +171,8 @@ def unfrozen_ph(
         In the order asked for; None below the limit of pK extrapolation, -20 C.
     """
     wanted = _check_temperatures(temperatures_c)
-    prepared = prepare(contents, brine, with_solids=False)
+    if prepared is None:
+        prepared = prepare(contents, brine, with_solids=False)
     trace = Trace(prepared.net, prepared.state, [], [], banned=frozenset({ICE}))
     found: dict[float, float | None] = {}
     for t in sorted(set(wanted), reverse=True):

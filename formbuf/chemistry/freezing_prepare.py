@@ -6,7 +6,7 @@ the activity model of the path, so that the path starts at the stated pH.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import pairwise
 
 import numpy as np
@@ -78,8 +78,30 @@ def prepare(contents: FreezingContents, brine: Brine, *, with_solids: bool) -> P
         prepared = Prepared(net, dissolve(net, t), "", 0.0)
     else:
         prepared = _titrate(contents, brine, contents.ph, with_solids=with_solids)
-    net, state = prepared.net, prepared.state
-    excess = saturation(net, state)
+    _refuse_undissolved(prepared, t)
+    return prepared
+
+
+def let_solids_form(
+    liquid: Prepared, contents: FreezingContents, brine: Brine
+) -> Prepared:
+    """Return a liquid prepared without solids with those of its brine let form.
+
+    Saves solving it again; raises as `prepare` does.
+    """
+    charge = dict((contents.base_ion, contents.acid_ion)).get(liquid.titrant)
+    ion = None if charge is None else (liquid.titrant, charge)
+    net = Network(contents, brine, extra_ion=ion, with_solids=True)
+    net.totals = liquid.net.totals.copy()
+    state = replace(liquid.state, amounts=np.zeros(len(net.phases)))
+    prepared = replace(liquid, net=net, state=state)
+    _refuse_undissolved(prepared, contents.prepare_temperature_c)
+    return prepared
+
+
+def _refuse_undissolved(prepared: Prepared, t: float) -> None:
+    net = prepared.net
+    excess = saturation(net, prepared.state)
     for i, solid in enumerate(net.solids, start=1):
         if excess[i] > 0.0:
             msg = (
@@ -88,7 +110,6 @@ def prepare(contents: FreezingContents, brine: Brine, *, with_solids: bool) -> P
                 f"{np.exp(excess[i]):.2f} times the solubility product), allowed 1"
             )
             raise InputError(msg)
-    return prepared
 
 
 def dissolve(net: Network, temperature_c: float) -> State:

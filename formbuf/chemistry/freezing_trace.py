@@ -41,6 +41,8 @@ _AMOUNT_ZERO = 1e-13
 #: A liquid smaller than this is gone, kg per kg of initial water.
 SMALLEST_LIQUID_KG = 1e-9
 _EXACT = 1e-9
+#: Farthest that a start is carried on, in steps as long as the last.
+_FARTHEST_CARRIED = 3.0
 #: How closely the end of a trace is found, K.
 _REFUSAL_STEP_K = 0.01
 
@@ -63,6 +65,8 @@ class Trace:
         Phases held back although saturated.
     outside_at_c : float or None
         Temperature at which a state without parameters ended the trace.
+    before : State or None
+        The solved state before the last, with the same phases.
     """
 
     net: Network
@@ -72,6 +76,7 @@ class Trace:
     gone_at_c: float | None = None
     banned: frozenset[int] = frozenset()
     outside_at_c: float | None = None
+    before: State | None = None
 
     def advance(self, target_c: float) -> None:
         """Carry the mixture to a temperature; stops early where the liquid ends.
@@ -88,6 +93,7 @@ class Trace:
             if not violated:
                 return
             self._next_event(violated, trial)
+            self.before = None
         msg = (
             f"more than {EVENT_CAP} phase changes between {self.state.temperature_c:.2f} "
             f"and {target_c:.2f} C, allowed {EVENT_CAP}"
@@ -107,7 +113,8 @@ class Trace:
             if length == abs(gap):
                 goal = target_c
             try:
-                trial = solve_state(self.net, self.state, self.active, goal)
+                start = self._carried_on(goal)
+                trial = solve_state(self.net, start, self.active, goal)
             except ConvergenceError:
                 step = 0.5 * length
                 if step < SHORTEST_STEP_K:
@@ -123,13 +130,34 @@ class Trace:
             if violated:
                 return violated, trial
             self._watch(trial)
-            self.state = trial
+            self.before, self.state = self.state, trial
             step = min(2.0 * step, longest)
             if np.exp(trial.ln_w) < SMALLEST_LIQUID_KG:
                 self._vanish(trial, trial.amounts)
                 return [], trial
         msg = f"no end after {STEP_CAP} temperature steps, allowed {STEP_CAP}"
         raise ConvergenceError(msg)
+
+    def _carried_on(self, goal_c: float) -> State:
+        """Carry the last two states on to a temperature, to start Newton's method.
+
+        A molality follows the depression of the freezing point about as a power of it.
+        """
+        now, before = self.state, self.before
+        if before is None or not self.active:
+            return now
+        at = [-t for t in (before.temperature_c, now.temperature_c, goal_c)]
+        if min(at) <= 0.0 or at[0] == at[1]:
+            return now
+        share = float(np.log(at[2] / at[1]) / np.log(at[1] / at[0]))
+        if abs(share) > _FARTHEST_CARRIED:
+            return now
+        return replace(
+            now,
+            ln_m=now.ln_m + share * (now.ln_m - before.ln_m),
+            ln_w=now.ln_w + share * (now.ln_w - before.ln_w),
+            amounts=now.amounts + share * (now.amounts - before.amounts),
+        )
 
     def violated(self, state: State) -> list[int]:
         """Return phases that are saturated but absent, or present below zero."""

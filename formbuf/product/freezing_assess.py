@@ -17,6 +17,7 @@ from dataclasses import dataclass, replace
 from typing import Any
 
 from formbuf.chemistry.freezing import freeze_path, unfrozen_ph
+from formbuf.chemistry.freezing_prepare import Prepared, let_solids_form, prepare
 from formbuf.chemistry.freezing_records import (
     HIGHEST_C,
     Assumption,
@@ -165,10 +166,20 @@ def assess_freezing(
     assumptions: tuple[Assumption, ...] = ("supersaturated",)
     if label is not None:
         assumptions = ("crystallising", "supersaturated")
+    liquid = prepare(contents, brine, with_solids=False)
     paths = tuple(
-        freeze_path(contents, wanted, assumption=a, brine=brine) for a in assumptions
+        freeze_path(
+            contents,
+            wanted,
+            assumption=a,
+            brine=brine,
+            prepared=liquid
+            if a == "supersaturated"
+            else let_solids_form(liquid, contents, brine),
+        )
+        for a in assumptions
     )
-    shift, cooling = _largest_shift(contents, brine, paths)
+    shift, cooling = _largest_shift(contents, brine, liquid, paths)
     evidence = evidence_of(library, system)
     verdict, basis = evidence.freezing_class, evidence.basis
     reason, sources = evidence.reason, evidence.sources
@@ -276,7 +287,10 @@ def where_samples_fall(
 
 
 def _largest_shift(
-    contents: FreezingContents, brine: Brine, paths: tuple[FreezingPath, ...]
+    contents: FreezingContents,
+    brine: Brine,
+    liquid: Prepared,
+    paths: tuple[FreezingPath, ...],
 ) -> tuple[float | None, float | None]:
     """Return the largest difference from the unfrozen liquid, and what that one does.
 
@@ -288,7 +302,7 @@ def _largest_shift(
     reached = [(t, ph) for t, ph in every if ph is not None and t <= HIGHEST_C]
     if not reached:
         return None, None
-    calm = unfrozen_ph(contents, [t for t, _ in reached], brine=brine)
+    calm = unfrozen_ph(contents, [t for t, _ in reached], brine=brine, prepared=liquid)
     gaps = [
         (ph - still, still - paths[0].ph_prepared)
         for (_, ph), still in zip(reached, calm, strict=True)

@@ -123,7 +123,10 @@ def make(
         np.asarray(target_ph, dtype=float),
     )
     fill: Array = np.zeros(c.shape)
-    buffer, mixed = _titrated(library, system, c, ph, temperature_c, background, fill)
+    ways = sorted(pieces(library, system), key=lambda piece: np.isinf(piece.limit))
+    buffer, mixed = _titrated(
+        library, system, ways, c, ph, temperature_c, background, fill
+    )
     if background.agent is None or background.target_mosm_kg is None:
         return Recipe(system.id, c, buffer, fill, mixed, ph)
     slope = np.full(
@@ -148,6 +151,7 @@ def make(
         buffer, mixed = _titrated(
             library,
             system,
+            ways,
             c,
             ph,
             temperature_c,
@@ -182,6 +186,7 @@ def _secant(slope: Array, step: Array, gained: Array) -> Array:
 def _titrated(
     library: Library,
     system: System,
+    ways: list[Piece],
     c: Array,
     ph: Array,
     temperature_c: float,
@@ -202,7 +207,7 @@ def _titrated(
     buffer: dict[str, Array] = {}
     for _ in range(2 if water is None else 1):
         buffer = _close(
-            library, system, c, ph, temperature_c, others, background, water
+            library, system, ways, c, ph, temperature_c, others, background, water
         )
         mixed = _whole(library, buffer, others, background)
         water = mixed.water_kg_l
@@ -229,6 +234,7 @@ def _whole(
 def _close(
     library: Library,
     system: System,
+    ways: list[Piece],
     c: Array,
     ph: Array,
     temperature_c: float,
@@ -236,12 +242,14 @@ def _close(
     background: Background,
     water: Array | None,
 ) -> dict[str, Array]:
-    """Return the buffer's materials [mmol/L], taking the stretch that fits each state."""
+    """Return the buffer's materials [mmol/L], taking the stretch that fits each state.
+
+    The stretch that closed the balance of the last state comes first among ``ways`` in
+    the next round, which mostly asks for the same one.
+    """
     done = np.zeros(c.shape, dtype=bool)
     result: dict[str, Array] = {}
-    ways = pieces(library, system)
-    order = sorted(ways, key=lambda piece: np.isinf(piece.limit))
-    for piece in order:
+    for piece in tuple(ways):
         start = {k: v * c for k, v in piece.start.items()}
         mixed = _whole(library, start, others, background)
         titrant = titrant_of(library, piece.added)
@@ -262,6 +270,8 @@ def _close(
             result[key] = np.where(fits, before + share * moles, before)
         done |= fits
         if done.all():
+            ways.remove(piece)
+            ways.insert(0, piece)
             break
     if not done.all():
         worst = float(ph[~done].flat[0])
