@@ -196,4 +196,10 @@ EXCLUSIONS = {
         case("intramuscular", 8.0, "glycylglycine_buffer", 10, rest=GLYCYLGLYCINE),
         case("intravenous", 8.0, "glycylglycine_buffer", 10, rest=GLYCYLGLYCINE),
     ),
+    # histidine in a penicillin solution; in its dry powder
+    "R132": (
+        case("intravenous", 6.0, "histidine_hydrochloride", 10, drug=BETA_LACTAM),
+        case("intravenous", 6.0, "histidine_hydrochloride", 10, drug=BETA_LACTAM,
+             product=DRIED),
+    ),
 }  # fmt: skip

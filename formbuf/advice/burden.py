@@ -6,13 +6,13 @@ from collections.abc import Mapping
 from dataclasses import replace
 
 from formbuf.advice.case import Case
-from formbuf.advice.evaluate import Product
+from formbuf.advice.criteria import ACIDITY
+from formbuf.advice.evaluate import Product, content_mmol_l
 from formbuf.advice.results import Exposure
 from formbuf.library.rule_tables import DoseLimit
 
 #: Substances of the dose burden, besides titratable acidity.
 COUNTED = ("sodium", "potassium", "phosphate")
-ACIDITY = "titratable_acidity"
 
 
 def limited(case: Case, rows: tuple[Exposure, ...]) -> tuple[Exposure, ...]:
@@ -35,14 +35,14 @@ def _strictest(case: Case, row: Exposure) -> DoseLimit | None:
 
 
 def own_burden(case: Case, product: Product) -> tuple[Exposure, ...]:
-    """Count what the buffer's own materials bring per dose, and titratable acidity."""
+    """Count what the buffer itself brings per dose, acidity included.
+
+    Of the acidity only what the charge of its own species changes by up to (or down
+    to) pH 7.4: what water, drug and excipients take up is there with any buffer.
+    """
     litres = case.brief.dose.volume_ml / 1000.0
-    content: dict[str, float] = dict.fromkeys(COUNTED, 0.0)
-    for key, mmol_l in product.own_mmol_l.items():
-        for component, count in case.library.find_material(key).contents.items():
-            if component in content:
-                content[component] += count * mmol_l
-    content[ACIDITY] = abs(product.titratable_acidity_mmol_l)
+    content = content_mmol_l(case.library, product.own_mmol_l, COUNTED)
+    content[ACIDITY] = abs(product.own_acidity_mmol_l)
     rows = []
     for substance, mmol_l in content.items():
         amount = mmol_l * litres

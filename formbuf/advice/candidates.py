@@ -15,10 +15,12 @@ from formbuf.advice.compatibility import (
     rule_screens,
 )
 from formbuf.advice.evaluate import Product, evaluate, single
+from formbuf.advice.gas_uptake import uptake_notes
 from formbuf.advice.measure import judge_criteria, taken_drift
 from formbuf.advice.precedent import SpeciesStanding
 from formbuf.advice.results import Candidate, CriterionResult, Screen
 from formbuf.advice.sizing import Sizing, proposed_mmol_l, size
+from formbuf.advice.surroundings import made_in
 from formbuf.errors import InputError
 from formbuf.library.records import System
 from formbuf.product.product_brief import ProductBrief
@@ -44,7 +46,7 @@ def judge_system(case: Case, system: System) -> Candidate:
             system,
             case.brief,
             case.loads,
-            case.sizing_background,
+            case.surroundings,
             case.law,
             case.settings,
         )
@@ -134,6 +136,8 @@ def judge_product(
             "the loads"
         )
         judged = {**judged, "capacity": _at_floor(judged["capacity"], case)}
+    ph_by_c = {s.temperature_c: s.ph for s in product.states}
+    notes += uptake_notes(case.loads.gas, brief, case.loads.acid_mmol_l, ph_by_c)
     drift = taken_drift(case, system, product)
     if drift is not None and drift[2] and drift[1] != brief.ph.measure_temperature_c:
         notes.append(_unknown_drift(brief, drift))
@@ -212,13 +216,13 @@ def shares_at(case: Case, system: System) -> dict[str, float]:
     """Amount of each species over the nominal concentration, at 10 mmol/L."""
     if len(system.species) == 1:
         return {system.species[0]: 1.0}
-    recipe = make(
+    recipe, _ = made_in(
         case.library,
         system,
-        10.0,
-        case.brief.ph.target,
+        np.array(10.0),
+        np.array(case.brief.ph.target),
         case.brief.ph.measure_temperature_c,
-        case.sizing_background,
+        case.surroundings,
         case.law,
     )
     shares = {}

@@ -8,7 +8,7 @@ from dataclasses import dataclass, field, replace
 from formbuf.advice.criteria_table import Settings, settings_for
 from formbuf.advice.evaluate import NO_TITRANT
 from formbuf.advice.loads import LoadBudget, load_budget
-from formbuf.advice.sizing import sizing_background
+from formbuf.advice.surroundings import Surroundings, surroundings_of
 from formbuf.chemistry.osmolality import OsmoticLaw
 from formbuf.errors import InputError
 from formbuf.library import Library
@@ -37,8 +37,8 @@ class Case:
     law : OsmoticLaw
     background : Background
         Excipients, drug and tonicity agent.
-    sizing_background : Background
-        The same with the agent fixed.
+    surroundings : Surroundings
+        The same as a buffer is sized in it.
     rulebook : Rulebook
     situation : Situation
     facts : FactSheet
@@ -56,7 +56,7 @@ class Case:
     loads: LoadBudget
     law: OsmoticLaw
     background: Background
-    sizing_background: Background
+    surroundings: Surroundings
     rulebook: Rulebook
     situation: Situation
     facts: FactSheet
@@ -85,7 +85,7 @@ def case_for(completed: Completed, *, thorough: bool = False) -> Case:
         load_budget(library, brief),
         law,
         background,
-        sizing_background(background, library, law),
+        surroundings_of(background, library, law),
         book,
         situation,
         product_facts(situation),

@@ -14,6 +14,9 @@ from formbuf.advice.wording import percent, plain
 from formbuf.chemistry.ionization import Ladder, pk_shift, state_fractions
 from formbuf.constants import LN10
 
+#: Among the substances of the dose burden, the one that is no material.
+ACIDITY = "titratable_acidity"
+
 
 def capacity(
     required_mmol_l: float | None,
@@ -115,7 +118,10 @@ def precedent(found: PrecedentScore, settings: Settings) -> CriterionResult:
 def dose_burden(
     rows: tuple[Exposure, ...], settings: Settings
 ) -> CriterionResult | None:
-    """Largest share of a per-dose limit that the buffer takes; None without limits."""
+    """Largest share of a per-dose limit that the buffer takes; None without limits.
+
+    ``rows`` are what the buffer itself brings (``burden.own_burden``).
+    """
     limited = [row for row in rows if row.limit_share is not None]
     if not limited:
         return None
@@ -128,13 +134,21 @@ def dose_burden(
         value,
         anchors.unit,
         scaled(value, anchors, floor, settings.floor_value),
-        f"{worst.substance.replace('_', ' ')}: {percent(value)} of the limit "
+        f"{_counted(worst.substance)}: {percent(value)} of the limit "
         f"{worst.limit:g} {worst.limit_unit}",
         sources=(worst.limit_source,) if worst.limit_source else (),
         deviation_ln=deviation_ln(
             value, value * spread, anchors, floor, settings.floor_value
         ),
     )
+
+
+def _counted(substance: str) -> str:
+    """Say what of a substance the dose burden counts."""
+    name = substance.replace("_", " ")
+    if substance == ACIDITY:
+        return f"{name} of the buffer's own species to pH 7.4"
+    return f"{name} of the buffer"
 
 
 def storage_drift(

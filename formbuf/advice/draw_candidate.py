@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 from formbuf.advice.draw_inputs import Amount, Builder, Input
 from formbuf.advice.draw_mixture import Drawn, drawn
 from formbuf.advice.error_model import ErrorModel, error_model
+from formbuf.advice.loads import LoadBudget
 from formbuf.advice.results import Candidate, Shortlist
 from formbuf.advice.sampling import Sampler
 from formbuf.advice.sizing import windows_of
@@ -46,6 +47,8 @@ class Draws:
     acid_mmol_l, base_mmol_l : ndarray, shape (draws,)
         Loads over shelf life.
     load_inputs : mapping of str to Input
+    loads : LoadBudget
+        As budgeted.
     """
 
     brief: ProductBrief
@@ -57,6 +60,7 @@ class Draws:
     acid_mmol_l: Array
     base_mmol_l: Array
     load_inputs: Mapping[str, Input]
+    loads: LoadBudget
 
 
 @dataclass(frozen=True)
@@ -129,6 +133,7 @@ def prepare_draws(result: Shortlist, sampler: Sampler) -> Draws:
         acid,
         base,
         builder.inputs,
+        result.loads,
     )
 
 
@@ -279,13 +284,17 @@ def _within_end(
     stored = set(brief.liquid_storage_temperatures_c)
     water = 1000.0 * float(made.mixture.water_kg_l)
     found: dict[float, Flags] = {}
+    states = {s.temperature_c: s.ph for s in candidate.states}
     for state in candidate.states:
         t = state.temperature_c
         if t != at and t not in stored:
             continue
         inside: Flags = np.ones(made.count, dtype=bool)
         moved = ph[t] - ph[at] if t != at else -reading
-        for load in (-draws.acid_mmol_l, draws.base_mmol_l):
+        acid = draws.acid_mmol_l + draws.loads.more_acid_mmol_l(
+            brief.ph.low + state.ph - states[at], t
+        )
+        for load in (-acid, draws.base_mmol_l):
             end = made.ph(t, load / water) if np.any(load) else ph[t]
             as_measured = end - moved
             inside &= (as_measured >= brief.ph.low) & (as_measured <= brief.ph.high)
@@ -331,8 +340,8 @@ def _required(
     states = {s.temperature_c: np.array([s.ph]) for s in candidate.states}
     loads = draws.acid_mmol_l, draws.base_mmol_l
     acid, base = (np.array([float(np.median(load))]) for load in loads)
-    carried = _carried(draws.brief, made, ph, own, loads)
-    before = _carried(draws.brief, still, states, own, (acid, base))
+    carried = _carried(draws, made, ph, own, loads)
+    before = _carried(draws, still, states, own, (acid, base))
     if nominal is None:
         nominal = candidate.concentration_mmol_l / max(float(before[0]), 1e-12)
     with np.errstate(divide="ignore"):
@@ -342,14 +351,14 @@ def _required(
 
 
 def _carried(
-    brief: ProductBrief,
+    draws: Draws,
     made: Drawn,
     ph: Mapping[float, Array],
     own: list[int],
     loads: tuple[Array, Array],
 ) -> Array:
     """Smallest ratio of what the buffer's own species carry to the load."""
-    window = windows_of(brief)
+    window = windows_of(draws.brief)
     water = 1000.0 * float(made.mixture.water_kg_l)
     best: Array = np.full(made.count, np.inf)
     for t in (window.measure_c, *window.others_c):
@@ -358,7 +367,10 @@ def _carried(
         drift = ph[t] - ph[window.measure_c]
         low, high = window.start_low + drift, window.start_high + drift
         for load, (start, end) in zip(
-            loads,
+            (
+                loads[0] + draws.loads.more_acid_mmol_l(low - window.room_low, t),
+                loads[1],
+            ),
             ((low, low - window.room_low), (high, high + window.room_high)),
             strict=True,
         ):

@@ -25,7 +25,7 @@ from formbuf.constants import (
 )
 from formbuf.library import Library
 from formbuf.product.composition import Mixture, mixture
-from formbuf.product.liquid import liquid_temperatures, titratable_acidity_mmol_l
+from formbuf.product.liquid import acidities_mmol_l, liquid_temperatures
 from formbuf.product.product_brief import ProductBrief
 from formbuf.product.recipe import Recipe, weighed
 
@@ -59,6 +59,8 @@ class Product:
         Ion pairs of the product without osmotic data.
     titratable_acidity_mmol_l : float
         Strong base that brings it to pH 7.4; negative: strong acid.
+    own_acidity_mmol_l : float
+        Of that, what the buffer's own species take up.
     own_capacity_share : float
         Share of the buffer's first species in the buffer's capacity.
     """
@@ -74,6 +76,7 @@ class Product:
     buffer_osmolality_mosm_kg: float
     unfitted_pairs: tuple[str, ...]
     titratable_acidity_mmol_l: float
+    own_acidity_mmol_l: float
     own_capacity_share: float
 
 
@@ -131,6 +134,8 @@ def evaluate(
     if own_mmol_l:
         bare = mixture(library, own_mmol_l)
         alone = float(bare.osmolality(t, bare.solve(t), law).osmolality_mosm_kg)
+    brought = content_mmol_l(library, own_mmol_l, species)
+    acidity, own_acidity = acidities_mmol_l(whole, t, measured, brought)
     first = whole.index(species[0]) if species else -1
     parts = component_capacity_mol_kg_ph(solution)[measure]
     own_total = float(parts[own].sum()) if own else 0.0
@@ -148,9 +153,22 @@ def evaluate(
         float(osmol.osmolality_mosm_kg),
         alone,
         tuple(f"{a} with {b}" for a, b in osmol.unfitted_pairs),
-        float(titratable_acidity_mmol_l(whole, t, measured.ph)),
+        acidity,
+        own_acidity,
         float(parts[first]) / own_total if own_total > 0.0 and first >= 0 else 0.0,
     )
+
+
+def content_mmol_l(
+    library: Library, materials_mmol_l: Mapping[str, float], species: tuple[str, ...]
+) -> dict[str, float]:
+    """Amount of each of some species that materials bring [mmol/L]."""
+    content = dict.fromkeys(species, 0.0)
+    for key, mmol_l in materials_mmol_l.items():
+        for component, count in library.find_material(key).contents.items():
+            if component in content:
+                content[component] += count * mmol_l
+    return content
 
 
 def less_titrant(

@@ -29,6 +29,7 @@ from formbuf.library import Library
 from formbuf.product.brief import Brief, Origin, brief_from_mapping, complete
 from formbuf.product.freezing_assess import assess_freezing
 from formbuf.product.freezing_contents import freezing_contents, freezing_temperatures
+from formbuf.product.overlay_changes import overlay_notice
 from formbuf.product.recipe import make
 
 #: Liquid temperature shown beside the one at which pH is set, quick form [C].
@@ -182,6 +183,7 @@ def freeze_composition(
         temperatures,
         temperatures,
         (one,),
+        warnings=tuple(filter(None, (overlay_notice(library),))),
     )
 
 

@@ -60,6 +60,7 @@ def made_of(c: Candidate) -> Made:
         (),
         c.titratable_acidity_mmol_l or 0.0,
         0.0,
+        0.0,
     )
     return Made(
         c.key,

@@ -4,14 +4,15 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from formbuf.chemistry import gas
-from formbuf.chemistry.ionization import state_fractions
-from formbuf.chemistry.water import water_density_kg_l
-from formbuf.constants import GAS_CONSTANT_J_MOL_K, ZERO_CELSIUS_K
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from formbuf.advice.gas_uptake import GasUptake, gas_uptake
 from formbuf.library import Library
 from formbuf.library.records import Basis
-from formbuf.product.composition import ladder_of
 from formbuf.product.product_brief import ProductBrief
+
+Array = NDArray[np.float64]
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,9 +48,13 @@ class LoadBudget:
     Attributes
     ----------
     items : tuple of LoadItem
+    gas : GasUptake or None
+        Where the product takes up carbon dioxide, of which ``items`` hold what it is at
+        the lower limit of the window as measured.
     """
 
     items: tuple[LoadItem, ...]
+    gas: GasUptake | None = None
 
     @property
     def acid_mmol_l(self) -> float:
@@ -60,6 +65,22 @@ class LoadBudget:
     def base_mmol_l(self) -> float:
         """Total base [mmol/L]."""
         return sum(item.base_mmol_l for item in self.items)
+
+    def more_acid_mmol_l(self, ph: ArrayLike, temperature_c: float) -> Array:
+        """Acid beyond the total that comes in at a temperature, down to a pH [mmol/L].
+
+        A buffer whose pH rises on cooling stands above its window as measured then, and
+        takes up more carbon dioxide.
+        """
+        if self.gas is None:
+            return np.zeros(np.shape(ph))
+        taken = self.gas.acid_mmol_l(ph, temperature_c)
+        return np.maximum(taken - self.gas.counted_mmol_l, 0.0)
+
+    @property
+    def has_load(self) -> bool:
+        """Whether there is a load at all."""
+        return self.acid_mmol_l > 0.0 or self.base_mmol_l > 0.0
 
     @property
     def all_default(self) -> bool:
@@ -114,12 +135,20 @@ def load_budget(library: Library, brief: ProductBrief) -> LoadBudget:
     ]
     if brief.container.is_glass and brief.container.count_alkali:
         items.append(_glass(library, brief.container.fill_volume_ml))
-    open_to_gas = brief.carbon_dioxide.exposure == "open"
-    if open_to_gas or brief.container.gas_permeable:
-        items.append(_carbon_dioxide(library, brief))
-    elif brief.carbon_dioxide.headspace_ratio is not None:
-        items.append(_headspace(library, brief, brief.carbon_dioxide.headspace_ratio))
-    return LoadBudget(tuple(items))
+    taken = gas_uptake(library, brief)
+    if taken is not None:
+        items.append(
+            LoadItem(
+                taken.name,
+                taken.counted_mmol_l,
+                0.0,
+                "derived",
+                "sander_2023",
+                taken.reason,
+                False,
+            )
+        )
+    return LoadBudget(tuple(items), taken)
 
 
 def _glass(library: Library, fill_volume_ml: float) -> LoadItem:
@@ -148,54 +177,4 @@ def _glass(library: Library, fill_volume_ml: float) -> LoadItem:
         q.source,
         "type I limit of the surface test at the smallest fill",
         True,
-    )
-
-
-def _carbon_dioxide(library: Library, brief: ProductBrief) -> LoadItem:
-    """Acid that dissolved carbon dioxide amounts to at the lower limit of the window.
-
-    It pulls the pH down, and the lower it gets the less is taken up: what decides
-    whether the window holds is the uptake at its lower limit.
-    """
-    ladder = ladder_of(library.species["carbonate"])
-    temperature_c = brief.ph.measure_temperature_c
-    taken = gas.absorbed_acid_mol_kg(
-        ladder, brief.carbon_dioxide.pressure_pa, brief.ph.low, temperature_c
-    )
-    return LoadItem(
-        "carbon dioxide taken up",
-        1000.0 * float(taken),
-        0.0,
-        "derived",
-        "sander_2023",
-        f"in equilibrium with {brief.carbon_dioxide.pressure_pa:.0f} Pa of carbon "
-        f"dioxide at pH {brief.ph.low:.2f}, the lower limit, and {temperature_c:g} C",
-        False,
-    )
-
-
-def _headspace(library: Library, brief: ProductBrief, ratio: float) -> LoadItem:
-    """Acid that the carbon dioxide of a closed headspace amounts to at the lower limit.
-
-    What the gas holds when it is closed shares itself between gas and solution.
-    """
-    ladder = ladder_of(library.species["carbonate"])
-    t, ph = brief.ph.measure_temperature_c, brief.ph.low
-    pressure_pa = brief.carbon_dioxide.pressure_pa
-    in_gas_mol_l_pa = ratio / 1000.0 / (GAS_CONSTANT_J_MOL_K * (t + ZERO_CELSIUS_K))
-    water_kg_l = float(water_density_kg_l(t))
-    free = float(state_fractions(ladder, ph, t, 0.0)[..., 0])
-    dissolved_mol_l_pa = float(gas.dissolved_mol_kg(1.0, t)) / free * water_kg_l
-    left_pa = pressure_pa * in_gas_mol_l_pa / (in_gas_mol_l_pa + dissolved_mol_l_pa)
-    taken = float(gas.absorbed_acid_mol_kg(ladder, left_pa, ph, t)) * water_kg_l
-    return LoadItem(
-        "carbon dioxide of the headspace",
-        1000.0 * taken,
-        0.0,
-        "derived",
-        "sander_2023",
-        f"{ratio:g} volumes of gas at {pressure_pa:.0f} Pa of carbon dioxide over the "
-        f"solution, of which {left_pa:.0f} Pa are left at pH {ph:.2f}, "
-        f"the lower limit, and {t:g} C",
-        False,
     )

@@ -9,7 +9,7 @@ import numpy as np
 from formbuf.advice import criteria, precedent
 from formbuf.advice.burden import own_burden
 from formbuf.advice.case import Case
-from formbuf.advice.evaluate import Product
+from formbuf.advice.evaluate import Product, content_mmol_l
 from formbuf.advice.precedent import SpeciesStanding
 from formbuf.advice.results import CriterionResult
 from formbuf.advice.sizing import Sizing
@@ -26,11 +26,16 @@ def judge_criteria(
     ceiling_mmol_l: float,
     concentration_mmol_l: float,
 ) -> Mapping[str, CriterionResult]:
-    """Every criterion that applies to the brief, from the made product."""
+    """Every criterion that applies to the brief, from the made product.
+
+    Without any load every buffer carries it, so that capacity would only raise all
+    alike; it is left out, and a warning says so (``verdict``).
+    """
     settings, brief = case.settings, case.brief
     amounts = _species_amounts(case, system, product)
-    results = {
-        "capacity": criteria.capacity(
+    results: dict[str, CriterionResult] = {}
+    if case.loads.has_load:
+        results["capacity"] = criteria.capacity(
             sizing.required_mmol_l,
             settings.number("sizing", "largest_considered_mmol_l"),
             ceiling_mmol_l,
@@ -38,7 +43,6 @@ def judge_criteria(
             settings,
             precedent.listed_sources(found),
         )
-    }
     drift = _drift(case, system, product, amounts)
     if drift is not None:
         results["temperature_drift"] = drift
@@ -63,11 +67,7 @@ def judge_criteria(
 
 
 def _species_amounts(case: Case, system: System, product: Product) -> tuple[float, ...]:
-    content = dict.fromkeys(system.species, 0.0)
-    for key, mmol_l in product.buffer_mmol_l.items():
-        for component, count in case.library.find_material(key).contents.items():
-            if component in content:
-                content[component] += count * mmol_l
+    content = content_mmol_l(case.library, product.buffer_mmol_l, system.species)
     return tuple(content[s] for s in system.species)
 
 

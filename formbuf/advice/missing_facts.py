@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass
 
 from formbuf.advice.screening import Finding
@@ -64,8 +64,9 @@ def missing_that_matter(
     A rule counts where it could not be judged, concerns the buffer, and would weigh
     more than what already fired in its topic. Its stake is shared by the facts it
     lacks. A fact whose rules are open for every candidate alike changes no order, so
-    only its exclusions count. Computed facts cannot be asked for and are left out, and
-    so are facts that only arise from the answer to another one that is missing.
+    only its exclusions count. Computed facts cannot be asked for and are left out.
+    A fact that only arises from the answer to another one that is missing hands its
+    stake to that one: without the kind of drug its groups are no question yet.
     """
     names = list(by_candidate) if contenders is None else list(contenders)
     weights: dict[str, float] = {}
@@ -86,11 +87,18 @@ def missing_that_matter(
                 systems.setdefault(name, {})[system] = None
                 if finding.severity == "exclude":
                     excluding.add(name)
+    for name in [n for n in weights if _waits_for(n, vocabulary, weights) != n]:
+        first = _waits_for(name, vocabulary, weights)
+        weights[first] += weights[name]
+        rules[first] |= rules[name]
+        systems[first] |= systems[name]
+        if name in excluding:
+            excluding.add(first)
     telling = [
         name
         for name in weights
         if (name in excluding or len(systems[name]) < len(names))
-        and not _waits(vocabulary[name], weights)
+        and _waits_for(name, vocabulary, weights) == name
     ]
     telling.sort(key=lambda name: (name not in excluding, -weights[name], name))
     return [
@@ -105,9 +113,15 @@ def missing_that_matter(
     ]
 
 
-def _waits(fact: FactDefinition, asked: Iterable[str]) -> bool:
-    """Whether a question only arises from the answer to another that is asked."""
-    return not set(asked).isdisjoint(re.findall(r"\w+", fact.only_if))
+def _waits_for(name: str, vocabulary: Vocabulary, asked: Collection[str]) -> str:
+    """Return the question to answer before another one arises; itself if none."""
+    for _ in range(len(asked)):
+        words = re.findall(r"\w+", vocabulary[name].only_if)
+        first = next((word for word in words if word in asked), None)
+        if first is None:
+            break
+        name = first
+    return name
 
 
 def _open(findings: Sequence[Finding]) -> list[Finding]:

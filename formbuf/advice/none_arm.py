@@ -63,7 +63,7 @@ def _carried(case: Case) -> tuple[float | None, str]:
     if known_from is not None:
         acid, alkali = _drug_capacity(case)
         return _least(acid, alkali, case), known_from
-    if loads.acid_mmol_l <= 0.0 and loads.base_mmol_l <= 0.0:
+    if not loads.has_load:
         return float("inf"), "no load"
     least = _least(*_drug_capacity(case), case)
     if least >= 1.0:
@@ -137,16 +137,14 @@ def _standing(case: Case, carried: float | None, how: str) -> tuple[Standing, st
     basis = {
         "titration": "by its measured titration",
         "pka": "by the drug's pK values",
-        "residues": "by its residues taken as independent, which overstates it",
+        "residues": "by its residues, an estimate that a titration should confirm",
         "net_charge": "by its isoelectric point and charge, a straight line",
         "no load": "since no load is expected",
         "rest": "by water and excipients alone, whatever the drug adds",
     }[how]
-    note = (
-        f"without a buffer the product carries {_share(carried)} of the loads, {basis}"
-    )
+    note = f"the product by itself carries {_share(carried)} of the loads, {basis}"
     if carried < 1.0:
-        return "viable", f"{note}: not enough by itself"
+        return "viable", note
     return ("lead" if how == "titration" else "back-up"), note
 
 
@@ -223,8 +221,11 @@ def _made(case: Case, system: System, carried: float | None) -> Candidate:
         judged = dict(
             judge_criteria(case, system, product, sizing, found, ceiling, 0.0)
         )
-        text = f"without a buffer the product carries {_share(carried)} of the loads"
-        judged["capacity"] = replace(judged["capacity"], text=text)
+        if "capacity" in judged:
+            text = (
+                f"without a buffer the product carries {_share(carried)} of the loads"
+            )
+            judged["capacity"] = replace(judged["capacity"], text=text)
     storage = [s for s in product.states if "storage" in s.kinds]
     reference = next(s.ph for s in product.states if "measure" in s.kinds)
     drift = max((s.ph - reference for s in storage), key=abs, default=None)

@@ -62,7 +62,7 @@ def judge_own(case: Case, own: CandidateInfo) -> Candidate:
             system,
             case.brief,
             case.loads,
-            case.sizing_background,
+            case.surroundings,
             case.law,
             case.settings,
         )
@@ -91,19 +91,7 @@ def judge_own(case: Case, own: CandidateInfo) -> Candidate:
 def _judge_materials(case: Case, own: CandidateInfo) -> Candidate:
     """Judge a list of materials: its pH is what it is."""
     library, brief = case.library, case.brief
-    content = _species_content(library, own.materials)
-    if not content:
-        names = ", ".join(library.find_material(key).name for key in own.materials)
-        msg = f"own formula {own.name!r}: {names}: none of them holds a proton"
-        hint = "Name a buffer; the product without one is judged in any case."
-        raise InputError(msg, hint=hint)
-    whole = mixture(
-        library,
-        {**case.background.materials_mmol_l, **_added(case, own)},
-        extras=case.background.extras,
-        volume_temperature_c=case.background.volume_temperature_c,
-    )
-    species = _buffering(case, whole, content)
+    content, whole, species = _made(case, own)
     system = _system_of(case, own, species[:2])
     product = _evaluated(case, own, whole, species)
     measured = next(s for s in product.states if "measure" in s.kinds)
@@ -132,6 +120,39 @@ def _judge_materials(case: Case, own: CandidateInfo) -> Candidate:
         )
         fired.append(set_aside(case, system, Screen("ph_window", text, "derived")))
     return replace(judged, screens=tuple(fired))
+
+
+def system_of_materials(case: Case, own: CandidateInfo) -> tuple[System, float]:
+    """Return what buffers in a formula of materials, and its total [mmol/L].
+
+    Raises
+    ------
+    InputError
+        When none of the materials holds a proton.
+    """
+    content, _, species = _made(case, own)
+    system = _system_of(case, own, species[:2])
+    return system, sum(content[name] for name in species)
+
+
+def _made(
+    case: Case, own: CandidateInfo
+) -> tuple[dict[str, float], Mixture, tuple[str, ...]]:
+    """Species of a formula with amounts [mmol/L], the product, and what buffers in it."""
+    library = case.library
+    content = _species_content(library, own.materials)
+    if not content:
+        names = ", ".join(library.find_material(key).name for key in own.materials)
+        msg = f"own formula {own.name!r}: {names}: none of them holds a proton"
+        hint = "Name a buffer; the product without one is judged in any case."
+        raise InputError(msg, hint=hint)
+    whole = mixture(
+        library,
+        {**case.background.materials_mmol_l, **_added(case, own)},
+        extras=case.background.extras,
+        volume_temperature_c=case.background.volume_temperature_c,
+    )
+    return content, whole, _buffering(case, whole, content)
 
 
 def _system_of(case: Case, own: CandidateInfo, species: tuple[str, ...]) -> System:

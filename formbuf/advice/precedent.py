@@ -32,6 +32,9 @@ class SpeciesStanding:
     route_largest_mmol_l : float
         Highest ceiling of any established species on the route: what a species
         without a ceiling of its own is never taken beyond.
+    kept_by : str
+        What keeps an in-house species or system that no precedent is known of; empty
+        for those of the tables.
     """
 
     species: str
@@ -39,6 +42,7 @@ class SpeciesStanding:
     row: Precedent | None
     kind_row: KindPrecedent | None
     route_largest_mmol_l: float = float("inf")
+    kept_by: str = ""
 
 
 def standings(
@@ -62,8 +66,22 @@ def standings(
             library.precedents.get((species, route)),
             kind_row(library, brief, species),
             largest,
+            _kept_by(library, system, species, route),
         )
         for species in system.species
+    )
+
+
+def _kept_by(library: Library, system: System, species: str, route: str) -> str:
+    """Say what to write where an in-house species is to stay without a precedent."""
+    known = library.species.get(species)
+    if not (system.overlay or (known is not None and known.overlay)):
+        return ""
+    only = f'system = "{system.id}", ' if system.id in library.systems else ""
+    return (
+        f'in-house: [[override]] with rule = "no_precedent", {only}reason, name and '
+        f"date keeps it; so does a row {species}, {route} in precedent.csv of a "
+        "directory of your own (--knowledge), which then holds the species too"
     )
 
 

@@ -13,12 +13,14 @@ from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Literal
 
-from formbuf.errors import InputError, nearest
+from formbuf.errors import nearest
 from formbuf.library import Library
 from formbuf.library.predicate_logic import Verdict, judge
 from formbuf.library.rule_tables import ANY, ANY_BUFFER, Rule, Rulebook, Severity
 from formbuf.library.rules import family_slug
 from formbuf.library.vocabulary import FactMapping, FactValue, Scope
+from formbuf.product.brief_messages import Fault, raise_faults, suggest
+from formbuf.product.brief_origin import Location, Origin
 from formbuf.product.product_parts import OverrideInfo
 
 Outcome = Literal["fired", "not fired", "not evaluable"]
@@ -35,6 +37,7 @@ _MILDER: Mapping[Severity, Severity | None] = {
     "note": None,
 }
 _NO_BUFFER = "none"
+SEE_RULES = "See `formbuf knowledge show rules`."
 
 
 @dataclass(frozen=True, slots=True)
@@ -256,6 +259,7 @@ def check_overrides(
     *,
     screens: Iterable[str] = (),
     systems: Iterable[str] = (),
+    origin: Origin | None = None,
 ) -> None:
     """Refuse overrides that name no rule, say no reason or stand twice.
 
@@ -267,33 +271,46 @@ def check_overrides(
         Names of screens that are no rules and may be overridden too.
     systems : iterable of str
         Known systems; empty leaves ``system`` unchecked.
+    origin : Origin, optional
+        Where the brief was written, for file and line.
 
     Raises
     ------
     InputError
         All faults at once.
     """
-    known = [rule.id for rule in rulebook.rules] + list(screens)
+    screen_names = sorted(screens)
+    known = [rule.id for rule in rulebook.rules] + screen_names
     known_systems = set(systems)
-    faults = []
+    faults: list[Fault] = []
     seen: set[tuple[str, str | None]] = set()
-    for place, override in enumerate(overrides, start=1):
-        key = f"override[{place}]"
+    for index, override in enumerate(overrides):
+        at: Location = ("override", index)
         if override.rule not in known:
-            near = ", ".join(nearest(override.rule, known)) or "ids of rules.csv"
-            faults.append(
-                f"{key}.rule: {override.rule!r} is no rule or screen, allowed {near}"
-            )
+            what = "is no rule or screen"
+            named = ", ".join(screen_names)
+            said = f"an id of rules.csv{f', or {named}' if named else ''}"
+            near = nearest(override.rule.upper(), known, 1)
+            hint = suggest(override.rule, known)
+            if not hint:
+                hint = f"Did you mean {near[0]!r}? {SEE_RULES}" if near else SEE_RULES
+            faults.append(Fault((*at, "rule"), what, said, override.rule, hint))
         if known_systems and override.system not in (None, *known_systems):
-            faults.append(f"{key}.system: {override.system!r} is no system")
-        blank = [n for n in ("reason", "name") if not getattr(override, n).strip()]
-        faults += [f"{key}.{name}: empty, allowed a text" for name in blank]
+            hint = suggest(override.system, sorted(known_systems))
+            said = "a system, or none for all"
+            faults.append(
+                Fault((*at, "system"), "is no system", said, override.system, hint)
+            )
+        faults += [
+            Fault((*at, name), "is empty", "a text", getattr(override, name))
+            for name in ("reason", "name")
+            if not getattr(override, name).strip()
+        ]
         if (override.rule, override.system) in seen:
-            faults.append(f"{key}.rule: {override.rule} is overridden twice")
+            what = "is overridden twice"
+            faults.append(Fault((*at, "rule"), what, "once", override.rule))
         seen.add((override.rule, override.system))
-    if faults:
-        hint = "An override needs rule, reason, name and date."
-        raise InputError("\n".join(faults), hint=hint)
+    raise_faults(origin or Origin(), faults)
 
 
 def worst_per_topic(

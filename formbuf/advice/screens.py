@@ -60,7 +60,7 @@ def precedent_screens(
                 Screen(
                     "no_precedent",
                     f"{s.species}: no precedent known on the {route} route and no "
-                    "monograph",
+                    f"monograph{f'; {s.kept_by}' if s.kept_by else ''}",
                     basis,
                     source,
                 )
@@ -113,7 +113,7 @@ def exclusion_screens(
     exclude: Iterable[str],
     materials: Iterable[str] | None = None,
 ) -> list[Screen]:
-    """Excluded by the brief: the system, one of its species, or an ion it brings.
+    """Excluded by the brief: system, species, material, or an ion it brings.
 
     ``materials`` are those it is made of, titrants included; those of the tables
     where it is not made yet.
@@ -125,7 +125,7 @@ def exclusion_screens(
         for material in materials
         for component in library.find_material(material).contents
     }
-    names = {system.id, *system.species, *brought}
+    names = {system.id, *system.species, *materials, *brought}
     return [
         Screen("excluded", f"{name} is excluded by the brief", "judgement")
         for name in exclude
@@ -159,35 +159,44 @@ def carbon_dioxide_screen(
         return None
     if brief.is_dried and not brief.liquid_storage_temperatures_c:
         return None
-    t = brief.ph.measure_temperature_c
     total = sum(
         row.mmol_l for row in product.species_states if row.component == "carbonate"
     )
-    free = sum(
-        row.mmol_l
-        for row in product.species_states
-        if row.component == "carbonate" and row.charge == 0
-    )
-    water = float(product.mixture.water_kg_l)
-    pressure = float(gas.pressure_pa(free / 1000.0 / water, t))
+    pressure, at = _worst_pressure(brief, product)
     exposure = brief.carbon_dioxide.exposure
     if exposure == "open":
         return Screen(
             "carbon_dioxide",
             f"open to the air it loses its carbon dioxide ({plain(pressure / 1000.0)} kPa "
-            f"above {plain(total)} mmol/L): the pH is not held",
+            f"at {at:g} C above {plain(total)} mmol/L): the pH is not held",
             "derived",
             "sander_2023",
         )
     if pressure > allowed_pa:
         return Screen(
             "carbon_dioxide",
-            f"it would need {plain(pressure / 1000.0)} kPa of carbon dioxide above it, "
-            f"allowed {plain(allowed_pa / 1000.0)} kPa in the headspace",
+            f"it would need {plain(pressure / 1000.0)} kPa of carbon dioxide above it at "
+            f"{at:g} C, allowed {plain(allowed_pa / 1000.0)} kPa in the headspace",
             "derived",
             "sander_2023",
         )
     return None
+
+
+def _worst_pressure(brief: ProductBrief, product: Product) -> tuple[float, float]:
+    """Highest pressure of its carbon dioxide [Pa], and at which temperature.
+
+    Of measurement and liquid storage; mostly the warmest, where the gas dissolves least.
+    """
+    found = []
+    stored = (brief.ph.measure_temperature_c, *brief.liquid_storage_temperatures_c)
+    for t in dict.fromkeys(stored):
+        whole = product.mixture
+        pressure = gas.implied_pressure_pa(
+            whole.ladders, whole.totals_mol_kg, t, whole.solve(t)
+        )
+        found.append((float(pressure), t))
+    return max(found, key=lambda pair: pair[0])
 
 
 def storage_window_screen(

@@ -55,6 +55,7 @@ def shortlist(brief: Brief, library: Library, *, thorough: bool = False) -> Shor
         case.rulebook,
         screens=SCREENS,
         systems=case.library.systems,
+        origin=brief.origin,
     )
     judged, shared = with_compatibility(case, judge_all(case))
     ranked = rank(judged, case.settings)

@@ -9,26 +9,25 @@ water, drug and excipients carry is credited to the product without buffer.
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
 from formbuf.advice.criteria_table import Settings
 from formbuf.advice.loads import LoadBudget
+from formbuf.advice.surroundings import Surroundings, made_in
+from formbuf.chemistry.equilibrium import Solution
 from formbuf.chemistry.osmolality import OsmoticLaw
 from formbuf.chemistry.titration import STRONG_ACID, STRONG_BASE
 from formbuf.library import Library
 from formbuf.library.records import System
 from formbuf.product.composition import Mixture
 from formbuf.product.product_brief import ProductBrief
-from formbuf.product.recipe import Background, make
 
 Array = NDArray[np.float64]
 
 GRID_POINTS = 10
-#: Osmoles per mole of buffer taken when the salt that fills the room is estimated.
-OSMOLES_PER_BUFFER = 2.6
 
 
 @dataclass(frozen=True, slots=True)
@@ -98,39 +97,12 @@ def windows_of(brief: ProductBrief, made_to_ph: float | None = None) -> Windows:
     )
 
 
-def sizing_background(
-    background: Background, library: Library, law: OsmoticLaw
-) -> Background:
-    """Return the background with the tonicity agent fixed for sizing.
-
-    The room that the agent fills depends on the buffer; for the ionic strength at
-    which capacity is judged an estimate is enough: the agent up to the target with
-    10 mmol/L of buffer.
-    """
-    if background.agent is None or background.target_mosm_kg is None:
-        return background
-    bare = replace(background, agent=None, target_mosm_kg=None)
-    agent = library.find_material(background.agent)
-    if not any(component in library.ions for component in agent.contents):
-        return bare
-    held = sum(
-        amount * sum(library.find_material(key).contents.values())
-        for key, amount in background.materials_mmol_l.items()
-    )
-    held += sum(extra.mmol_l for extra in background.extras)
-    room = background.target_mosm_kg - 0.93 * held - 10.0 * OSMOLES_PER_BUFFER
-    fill = max(room, 0.0) / 0.93 / sum(agent.contents.values())
-    materials = dict(background.materials_mmol_l)
-    materials[background.agent] = materials.get(background.agent, 0.0) + fill
-    return replace(bare, materials_mmol_l=materials)
-
-
 def size(
     library: Library,
     system: System,
     brief: ProductBrief,
     loads: LoadBudget,
-    background: Background,
+    surroundings: Surroundings,
     law: OsmoticLaw,
     settings: Settings,
 ) -> Sizing:
@@ -142,8 +114,8 @@ def size(
     system : System
     brief : ProductBrief
     loads : LoadBudget
-    background : Background
-        With a fixed tonicity agent; see ``sizing_background``.
+    surroundings : Surroundings
+        See ``surroundings_of``.
     law : OsmoticLaw
     settings : Settings
 
@@ -154,17 +126,17 @@ def size(
     most = settings.number("sizing", "largest_considered_mmol_l")
     grid = np.geomspace(0.3, most, GRID_POINTS)
     windows = windows_of(brief)
-    if loads.acid_mmol_l <= 0.0 and loads.base_mmol_l <= 0.0:
+    if not loads.has_load:
         everything = np.full(grid.shape, np.inf)
         return Sizing(0.0, "none", windows.measure_c, everything, grid)
     starts = np.array([windows.start_low, windows.start_high])
-    recipe = make(
+    recipe, measured = made_in(
         library,
         system,
         np.broadcast_to(grid[:, np.newaxis], (grid.size, 2)),
         np.broadcast_to(starts, (grid.size, 2)),
         windows.measure_c,
-        background,
+        surroundings,
         law,
     )
     own = [recipe.mixture.index(name) for name in system.species]
@@ -173,12 +145,14 @@ def size(
     where = np.full(grid.shape, windows.measure_c)
     which = np.full(grid.shape, "acid")
     for t in (windows.measure_c, *windows.others_c):
-        acid, base = _own_capacity(recipe.mixture, own, t, windows)
+        start = measured if t == windows.measure_c else recipe.mixture.solve(t)
+        low, high = _limits(start, t, windows)
+        acid, base = _own_capacity(recipe.mixture, start, own, t, low, high)
         for label, carried, load in (
-            ("acid", acid, loads.acid_mmol_l),
-            ("base", base, loads.base_mmol_l),
+            ("acid", acid, loads.acid_mmol_l + loads.more_acid_mmol_l(low, t)),
+            ("base", base, np.full(grid.shape, loads.base_mmol_l)),
         ):
-            if load <= 0.0:
+            if not np.any(load > 0.0):
                 continue
             ratio = carried / load
             tighter = ratio < best
@@ -224,23 +198,36 @@ def carried_by(
                 continue
             room = windows.room_low if way < 0.0 else windows.room_high
             at = np.array([start, start + way * room]) + move
+            if way < 0.0:
+                load = load + float(loads.more_acid_mmol_l(at[1], t))
             held = mixture.titrate(t, at, titrant).charge_mol_kg[..., own].sum(axis=-1)
             share = -way * float(held[1] - held[0]) * water / load
             tightest = min(tightest, (share, label, t), key=lambda entry: entry[0])
     return tightest
 
 
-def _own_capacity(
-    mixture: Mixture, own: list[int], temperature_c: float, windows: Windows
+def _limits(
+    start: Solution, temperature_c: float, windows: Windows
 ) -> tuple[Array, Array]:
-    """Acid and base [mmol/L] that the own species carry within the window."""
-    start = mixture.solve(temperature_c)
+    """Limits of pH by concentration: the window, moved by the drift elsewhere."""
     if temperature_c == windows.measure_c:
         low = np.full(start.ph.shape[0], windows.start_low - windows.room_low)
         high = np.full(start.ph.shape[0], windows.start_high + windows.room_high)
     else:
         low = start.ph[:, 0] - windows.room_low
         high = start.ph[:, 1] + windows.room_high
+    return low, high
+
+
+def _own_capacity(
+    mixture: Mixture,
+    start: Solution,
+    own: list[int],
+    temperature_c: float,
+    low: Array,
+    high: Array,
+) -> tuple[Array, Array]:
+    """Acid and base [mmol/L] that the own species carry down to and up to a pH."""
     acid = mixture.titrate(
         temperature_c, np.stack([low, low], axis=-1), STRONG_ACID
     ).charge_mol_kg

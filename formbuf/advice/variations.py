@@ -121,13 +121,12 @@ def _with_fallback(case: Case, factor: float) -> Case:
 
 
 def _scaled(loads: LoadBudget, variation: Variation) -> LoadBudget:
-    return LoadBudget(
-        tuple(
-            replace(
-                item,
-                acid_mmol_l=variation.acid_factor * item.acid_mmol_l,
-                base_mmol_l=variation.base_factor * item.base_mmol_l,
-            )
-            for item in loads.items
+    items = tuple(
+        replace(
+            item,
+            acid_mmol_l=variation.acid_factor * item.acid_mmol_l,
+            base_mmol_l=variation.base_factor * item.base_mmol_l,
         )
+        for item in loads.items
     )
+    return replace(loads, items=items)

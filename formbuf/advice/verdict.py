@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Sequence
 
+from formbuf.advice.buffering_agent import buffering_agent_note
 from formbuf.advice.case import Case
+from formbuf.advice.ranking import NONE_ID
 from formbuf.advice.results import Candidate
 from formbuf.advice.wording import plain
 from formbuf.library import Library
@@ -35,7 +38,7 @@ def verdict(candidates: Sequence[Candidate]) -> str:
     by_key = {c.key: c for c in candidates}
     heads = [c for c in candidates if c.rank is not None and c.variant_of is None]
     if not heads:
-        return "No candidate is acceptable: every system is screened out."
+        return _without_heads(candidates)
     lead = heads[0]
     made = amount_and_name(lead)
     sentences = [f"Lead: {made}."]
@@ -50,6 +53,32 @@ def verdict(candidates: Sequence[Candidate]) -> str:
     return " ".join(sentences)
 
 
+def _without_heads(candidates: Sequence[Candidate]) -> str:
+    """Say that no buffer is left, by what, and how the product without one stands."""
+    bare = next((c for c in candidates if c.system.id == NONE_ID), None)
+    dropped = [c for c in candidates if c.dropped_by and c is not bare]
+    screened = "every buffer system is screened out"
+    if dropped:
+        count = Counter(name for c in dropped for name in {s.id for s in c.dropped_by})
+        screen, times = count.most_common(1)[0]
+        screened += f", most often by {screen} ({times} of {len(dropped)})"
+    if bare is None or bare.dropped_by:
+        return f"No candidate is acceptable: {screened}."
+    note = f": {bare.notes[0]}" if bare.notes else ""
+    if bare.standing == "not evaluable":
+        return (
+            f"No buffer is acceptable: {screened}. Whether the product stands without "
+            f"one is not evaluable{note}."
+        )
+    if bare.carried_share is not None and bare.carried_share < 1.0:
+        return (
+            f"No buffer is acceptable: {screened}. The product is not enough by itself"
+            f"{note}."
+        )
+    sentence = screened[0].upper() + screened[1:]
+    return f"No added buffer stays viable{note}. {sentence}."
+
+
 def warnings_of(case: Case, candidates: Sequence[Candidate]) -> tuple[str, ...]:
     """Return what a reader must know about the result as a whole."""
     found = precedent_file_warnings(case.library)
@@ -58,15 +87,26 @@ def warnings_of(case: Case, candidates: Sequence[Candidate]) -> tuple[str, ...]:
         found.append(
             "no acid or base load was stated: concentrations rest on default loads"
         )
-    if not case.loads.acid_mmol_l and not case.loads.base_mmol_l:
-        found.append(
-            "no load is expected at all: any buffer carries it, so capacity orders "
-            "nothing, and the product without buffer is the one to beat"
-        )
+    if not case.loads.has_load:
+        found.append(_unloaded(case))
     found += _uncounted_drug(case)
     found += _excluded_but_brought(case)
+    found += filter(None, (buffering_agent_note(case, candidates),))
     found += _osmolality_warnings(case, candidates)
     return tuple(found)
+
+
+def _unloaded(case: Case) -> str:
+    """Say that capacity is left out of the ranking, and what to size from instead."""
+    least = f"{case.settings.number('sizing', 'minimum_mmol_l'):g} mmol/L at least"
+    if case.brief.is_large_volume_intravenous:
+        least = "the smallest that is weighed"
+    return (
+        "no load stated: capacity does not tell the candidates apart and is left out of "
+        f"the ranking; proposed is {least}, and the product without buffer is the one to "
+        "beat; size from the acid or base that a batch without buffer takes up over "
+        "shelf life ([loads])"
+    )
 
 
 def _uncounted_drug(case: Case) -> list[str]:
@@ -104,7 +144,7 @@ def _excluded_but_brought(case: Case) -> list[str]:
     found = [
         f"{name} is excluded by the brief, yet the {what} {material.name} brings it"
         for material, what in rows
-        for name in material.contents
+        for name in (material.id, *material.contents)
         if name in brief.exclude
     ]
     if brief.drug.counter_ion in brief.exclude:

@@ -43,3 +43,8 @@ def percent(share: float) -> str:
     if abs(value) < SMALLEST_PERCENT:
         return "0 %" if value == 0.0 else f"less than {SMALLEST_PERCENT:g} %"
     return f"{plain(value)} %"
+
+
+def bare_standing(carried_share: float | None) -> str:
+    """Say of a product without buffer that is no choice by itself what it lacks."""
+    return "open" if carried_share is None else "not enough by itself"

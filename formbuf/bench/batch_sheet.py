@@ -61,6 +61,12 @@ def batch_sheet(
     hand = (in_hand or InHand()).checked(bench.library)
     bench = with_hydrates_in_hand(bench, hand.hydrates)
     _check_size(volume_l, mass_kg)
+    if right_at_c is not None and bench.given_mmol_l is not None:
+        msg = (
+            f"--right-at: the formula {bench.system.name!r} is a list of materials and "
+            "made as it is, allowed for a system, whose pH is set"
+        )
+        raise InputError(msg)
     at = bench.measure_temperature_c if right_at_c is None else right_at_c
     ways = ways_of(bench, temperature_c=at)
     if volume_l is None:
@@ -68,7 +74,9 @@ def batch_sheet(
         volume_l = mass_kg / _density_kg_l(bench, ways[0].made)
     sheets = tuple(_sheet(bench, way, volume_l, hand) for way in ways)
     notes = [*bench.notes, *ways[0].made.mixture.notes]
-    if len(ways) == 1 and bench.system.role != "none":
+    if bench.given_mmol_l is not None:
+        notes = [*_as_given(bench, ways[0].made), *notes]
+    elif len(ways) == 1 and bench.system.role != "none":
         notes.append("one way of making it: the materials of the tables allow no other")
     for way in ways:
         extra = ", ".join(f"{v:.3g} mmol/L {k}" for k, v in way.by_product.items())
@@ -95,6 +103,23 @@ def _check_size(volume_l: float | None, mass_kg: float | None) -> None:
         unit = "L" if mass_kg is None else "kg"
         msg = f"{option}: value {size:g} {unit}, allowed {LEAST_BATCH_L:g} to {MOST_BATCH_L:g}"
         raise InputError(msg)
+
+
+def _as_given(bench: Bench, made: Made) -> list[str]:
+    """Say what a formula of materials leaves no choice about, and how far its pH is off."""
+    t = bench.measure_temperature_c
+    ph = float(made.mixture.solve(t).ph)
+    window = f"{bench.low_ph:g} to {bench.high_ph:g}"
+    within = "within" if bench.low_ph <= ph <= bench.high_ph else "outside"
+    made_as_given = (
+        "the formula is weighed as it is given: making it from acid and base forms "
+        "together, or from one form with strong titrant, does not apply"
+    )
+    reads = (
+        f"as given it reads pH {ph:.2f} at {t:g} C, {within} the window {window}; the "
+        f"target is {bench.target_ph:.2f}"
+    )
+    return [made_as_given, reads]
 
 
 def _sheet(bench: Bench, way: Way, batch_l: float, hand: InHand) -> WaySheet:
@@ -196,7 +221,9 @@ def _readings(bench: Bench, made: Made) -> tuple[Reading, ...]:
 
 def _storage_readings(bench: Bench) -> tuple[StorageReading, ...]:
     """Return what the meter should read to have the target at each storage."""
-    found = []
+    found: list[StorageReading] = []
+    if bench.given_mmol_l is not None:  # its pH is what it is
+        return ()
     for t in bench.storage_temperatures_c:
         made = make_product(bench, temperature_c=t)
         at = np.array([bench.prepare_temperature_c, ROOM_C])

@@ -321,7 +321,8 @@ def _neutral_materials(
 ) -> dict[str, float] | None:
     """Materials that bring the uncharged solutes; None where one is not found."""
     library = bench.library
-    offered = [*bench.background.materials_mmol_l, bench.background.agent]
+    background, given = bench.background, bench.given_mmol_l or {}
+    offered = [*background.materials_mmol_l, background.agent, *given]
     found: dict[str, float] = {}
     for name, amount in wanted.items():
         if name in library.species or name in library.ions:

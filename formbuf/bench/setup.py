@@ -9,6 +9,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
 
+from formbuf.bench import given
 from formbuf.chemistry.osmolality import OsmoticLaw
 from formbuf.errors import InputError
 from formbuf.library import Library
@@ -18,6 +19,7 @@ from formbuf.product.brief import Completed
 from formbuf.product.composition import Mixture
 from formbuf.product.liquid import liquid_temperatures
 from formbuf.product.osmotics import osmotic_law
+from formbuf.product.overlay_changes import overlay_notice
 from formbuf.product.product_parts import CarbonDioxideInfo
 from formbuf.product.recipe import Background, make
 
@@ -59,6 +61,9 @@ class Bench:
         None for closed.
     notes : tuple of str
         What a reader should know.
+    given_mmol_l : mapping of str to float or None
+        Materials of an own formula, made as they are [mmol/L]; None where the system is
+        made to the target.
     """
 
     library: Library
@@ -76,6 +81,7 @@ class Bench:
     dose_volume_ml: float | None = None
     carbon_dioxide: CarbonDioxideInfo | None = None
     notes: tuple[str, ...] = ()
+    given_mmol_l: Mapping[str, float] | None = None
 
     @property
     def storage_temperatures_c(self) -> tuple[float, ...]:
@@ -152,6 +158,34 @@ def bench_from_brief(
     )
 
 
+def bench_from_formula(
+    completed: Completed,
+    system: System,
+    concentration_mmol_l: float,
+    materials_mmol_l: Mapping[str, float],
+) -> Bench:
+    """Return the bench of an own formula that is a list of materials.
+
+    Parameters
+    ----------
+    completed : Completed
+    system : System
+        What buffers in it, under the name of the formula.
+    concentration_mmol_l : float
+        Total of the buffering species.
+    materials_mmol_l : mapping of str to float
+        The formula, beside the excipients and drug of the brief.
+
+    Returns
+    -------
+    Bench
+        Nothing is titrated and no osmolality filled up: the formula is what it is.
+    """
+    bench = bench_from_brief(completed, system, concentration_mmol_l)
+    background = replace(bench.background, agent=None, target_mosm_kg=None)
+    return replace(bench, background=background, given_mmol_l=dict(materials_mmol_l))
+
+
 def bench_from_options(
     library: Library,
     system: System,
@@ -212,7 +246,9 @@ def bench_from_options(
         _check("--dose-ml", dose_volume_ml, 0.0, MOST_DOSE_ML)
     low, high = window_ph or (ph - USUAL_HALF_WIDTH_PH, ph + USUAL_HALF_WIDTH_PH)
     if not low < ph < high:
-        msg = f"--window: {low:g} to {high:g} does not hold the target {ph:g}"
+        msg = (
+            f"--low and --high: {low:g} to {high:g} does not hold the target pH {ph:g}"
+        )
         raise InputError(msg)
     _check_agent(agent, target_mosm_kg)
     found = {
@@ -236,6 +272,7 @@ def bench_from_options(
         _temperatures(measure_temperature_c, prepare, storage_c),
         Background(found, (), filled, target_mosm_kg, measure_temperature_c),
         dose_volume_ml,
+        notes=tuple(filter(None, (overlay_notice(library),))),
     )
 
 
@@ -279,6 +316,11 @@ def make_product(
     InputError
         When the materials cannot give this pH.
     """
+    if bench.given_mmol_l is not None and system is None:
+        library, background = bench.library, bench.background
+        buffer, rest = given.parts(library, bench.given_mmol_l, bench.system.species)
+        others = given.beside(background.materials_mmol_l, rest)
+        return Made(given.mixed(library, buffer, others, background), buffer, others)
     used = system or bench.system
     at = bench.measure_temperature_c if temperature_c is None else temperature_c
     recipe = make(
@@ -302,7 +344,19 @@ def make_product(
 def without_buffer(bench: Bench) -> Bench:
     """Return the same product with no buffer, set to its pH with acid or base alone."""
     system = bench.library.systems[NO_BUFFER]
-    return replace(bench, system=system, concentration_mmol_l=0.0)
+    background = bench.background
+    if bench.given_mmol_l is not None:
+        formula, species = bench.given_mmol_l, bench.system.species
+        _, rest = given.parts(bench.library, formula, species)
+        others = given.beside(background.materials_mmol_l, rest)
+        background = replace(background, materials_mmol_l=others)
+    return replace(
+        bench,
+        system=system,
+        concentration_mmol_l=0.0,
+        background=background,
+        given_mmol_l=None,
+    )
 
 
 def _check_concentration(system: System, concentration_mmol_l: float) -> None:

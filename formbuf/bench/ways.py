@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from typing import Literal
 
+from formbuf.bench.given import is_titrant
 from formbuf.bench.grades import same_but_water
 from formbuf.bench.setup import NO_BUFFER, Bench, Made, make_product
 from formbuf.errors import ConvergenceError, InputError
@@ -13,7 +14,7 @@ from formbuf.library import Library
 from formbuf.library.records import System
 from formbuf.product.pairs import species_forms
 
-WayId = Literal["forms", "titrant"]
+WayId = Literal["forms", "titrant", "as_given"]
 #: Share of an ion by which one way must exceed the other to be worth saying; less
 #: comes from the volumes that the materials take up.
 WORTH_SAYING = 0.01
@@ -25,7 +26,7 @@ class Way:
 
     Attributes
     ----------
-    id : {"forms", "titrant"}
+    id : {"forms", "titrant", "as_given"}
     title : str
     made : Made
     titrants : tuple of str
@@ -66,8 +67,10 @@ def with_hydrates_in_hand(bench: Bench, hydrates: tuple[str, ...]) -> Bench:
 
 def _materials(bench: Bench) -> set[str]:
     system, background = bench.system, bench.background
-    found = {system.acid_material, system.base_material, background.agent}
-    return {name for name in (*found, *background.materials_mmol_l) if name}
+    found: set[str | None] = {background.agent, *background.materials_mmol_l}
+    if bench.given_mmol_l is None:
+        found |= {system.acid_material, system.base_material}
+    return {name for name in (*found, *(bench.given_mmol_l or {})) if name}
 
 
 def _swapped(bench: Bench, others: set[str], wanted: str) -> Bench:
@@ -93,6 +96,9 @@ def _swapped(bench: Bench, others: set[str], wanted: str) -> Bench:
                 for name, amount in background.materials_mmol_l.items()
             },
         ),
+        given_mmol_l=None
+        if bench.given_mmol_l is None
+        else {str(taken(k)): amount for k, amount in bench.given_mmol_l.items()},
     )
 
 
@@ -110,6 +116,10 @@ def ways_of(bench: Bench, *, temperature_c: float | None = None) -> tuple[Way, .
     InputError
         When no way reaches the pH.
     """
+    if bench.given_mmol_l is not None:
+        one = make_product(bench)
+        strong = tuple(k for k in one.buffer_mmol_l if is_titrant(bench.library, k))
+        return (Way("as_given", "the formula as it is given", one, strong, {}),)
     made: list[tuple[WayId, str, Made]] = []
     failure: InputError | None = None
     try:
@@ -136,7 +146,7 @@ def ways_of(bench: Bench, *, temperature_c: float | None = None) -> tuple[Way, .
             kind,
             title,
             one,
-            tuple(k for k in one.buffer_mmol_l if _is_titrant(bench.library, k)),
+            tuple(k for k in one.buffer_mmol_l if is_titrant(bench.library, k)),
             _beyond(own, ions),
         )
         for (kind, title, one), own in zip(made, ions, strict=True)
@@ -163,7 +173,7 @@ def _with_titrant(
             continue
         if extra:
             made = _as_buffer(made, extra)
-        if any(_is_titrant(bench.library, key) for key in made.buffer_mmol_l):
+        if any(is_titrant(bench.library, key) for key in made.buffer_mmol_l):
             tries.append(made)
     return min(
         tries,
@@ -218,17 +228,6 @@ def _as_buffer(made: Made, extra: Mapping[str, float]) -> Made:
         {**extra, **made.buffer_mmol_l},
         {k: v for k, v in others.items() if v > 1e-9},
     )
-
-
-def _is_titrant(library: Library, material: str) -> bool:
-    """Whether a material is a strong acid or base: one strong ion and no species."""
-    contents = library.find_material(material).contents
-    charge = sum(
-        count * library.ions[name].charge
-        for name, count in contents.items()
-        if name in library.ions
-    )
-    return bool(charge) and all(name in library.ions for name in contents)
 
 
 def _strong_ions(library: Library, made: Made) -> dict[str, float]:

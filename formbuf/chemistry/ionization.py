@@ -63,10 +63,14 @@ class Ladder:
     aggregates : tuple of Aggregate
         Products of several units; empty for almost every component.
     sites : tuple of Sites
-        For a macro-ion: its groups, one per entry of ``pka``, whose pK is apparent.
+        For a macro-ion: its groups, one per entry of ``pka``, whose pK is that of a
+        molecule without net charge.
     curve : ChargeCurve or None
         For a macro-ion known by its titration curve; ``pka`` is then that of a step
         of 1 kJ/mol, by which the curve learns the temperature (``of_curve``).
+    work : float
+        For a macro-ion with ``sites``: electrostatic work factor w, see
+        ``formbuf.chemistry.macro_work``; 0 for independent groups.
     """
 
     name: str
@@ -77,6 +81,7 @@ class Ladder:
     aggregates: tuple[Aggregate, ...] = ()
     sites: tuple[Sites, ...] = ()
     curve: ChargeCurve | None = None
+    work: float = 0.0
 
     @classmethod
     def of_curve(cls, name: str, curve: ChargeCurve) -> Ladder:

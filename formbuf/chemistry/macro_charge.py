@@ -43,4 +43,6 @@ def charge_and_variance(
     if ladder.curve is not None:
         return macro_ion.curve_charge(ladder.curve, at, pk[0])
     constants = tuple(np.asarray(10.0**-value) for value in pk)
-    return macro_ion.sites_charge(ladder.sites, constants, np.asarray(10.0**at))
+    return macro_ion.sites_charge(
+        ladder.sites, constants, np.asarray(10.0**at), ladder.work
+    )

@@ -1,10 +1,11 @@
 """Net charge of a protein (or any macro-ion) as a function of pH.
 
-Two descriptions: groups of like sites that bind protons independently of each other
-(Linderstroem-Lang's picture without the work term), and a curve through measured
-points. Both are apparent: they hold on the pH scale at the ionic strength of the
-product and do not move with it; a macro-ion counts neither in the ionic strength nor
-(its counter-ions do both) as more than one particle.
+Two descriptions: groups of like sites, which act on each other through the net charge
+only (Linderstroem-Lang's picture; independent of each other without its work term, see
+``macro_work``), and a curve through measured points. Both are apparent: they hold on
+the pH scale at the ionic strength of the product and do not move with it; a macro-ion
+counts neither in the ionic strength nor (its counter-ions do both) as more than one
+particle.
 """
 
 from __future__ import annotations
@@ -15,6 +16,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from formbuf.constants import LN10
+from formbuf.errors import ConvergenceError
 
 Array = NDArray[np.float64]
 
@@ -25,6 +27,12 @@ HEAT_PH = (4.0, 6.5, 9.5)
 HEAT_KJ_MOL = (3.5, 29.5, 43.4)
 #: pK and enthalpy of the step by which a curve learns the temperature.
 CURVE_PKA, CURVE_DH_KJ_MOL = 0.0, 1.0
+#: Steps allowed for the charge of groups that act on each other, and the last step at
+#: which it counts as found, per group; the error left is of the order of its square.
+WORK_CAP = 100
+WORK_STEP_TOLERANCE = 1e-9
+#: Largest shift of pK for which powers of ten are taken; beyond, all groups are full.
+SHIFT_LIMIT = 250.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -171,22 +179,71 @@ def _heat_slope(ph: Array) -> Array:
 
 
 def sites_charge(
-    sites: tuple[Sites, ...], step_k: tuple[Array, ...], u: Array
+    sites: tuple[Sites, ...],
+    step_k: tuple[Array, ...],
+    u: Array,
+    work: float = 0.0,
 ) -> tuple[Array, Array]:
-    """Net charge of independent groups and its variance.
+    """Net charge of the groups of a macro-ion and its variance.
 
     Parameters
     ----------
     sites : tuple of Sites
     step_k : tuple of ndarray
-        Apparent ionization constant of each kind of group.
+        Ionization constant of each kind of group where the net charge is zero.
     u : ndarray, shape (...)
         10^pH.
+    work : float
+        w of ``macro_work``, 0 or more; 0 for independent groups.
 
     Returns
     -------
     tuple of (ndarray, ndarray), shape (...)
+        Charge Z, and -(dZ/dpH)/ln 10.
+
+    Raises
+    ------
+    ConvergenceError
+        When the charge is not found within the cap.
+
+    Notes
+    -----
+    Z = f(pH + (2 w / ln 10) Z) with f of independent groups, which falls with pH: one
+    root, between 0 and f(pH). Its slope gives b / (1 + 2 w b) for the variance, where
+    b is that of independent groups of the same charge.
     """
+    charge, variance = _independent(sites, step_k, u)
+    if work == 0.0:
+        return charge, variance
+    low, high = np.minimum(charge, 0.0), np.maximum(charge, 0.0)
+    tolerance = WORK_STEP_TOLERANCE * (1.0 + sum(site.count for site in sites))
+    at = charge / (1.0 + 2.0 * work * variance)
+    before = np.full(np.shape(at), np.inf)
+    for _ in range(WORK_CAP):
+        shift = np.clip((2.0 * work / LN10) * at, -SHIFT_LIMIT, SHIFT_LIMIT)
+        charge, variance = _independent(sites, step_k, u * 10.0**shift)
+        gap, rate = at - charge, 1.0 + 2.0 * work * variance
+        step = -gap / rate
+        size = np.abs(step)
+        if np.all(size <= tolerance):
+            return at + step, variance / rate
+        low, high = np.where(gap < 0.0, at, low), np.where(gap > 0.0, at, high)
+        trial = at + step
+        good = (trial >= low) & (trial <= high)
+        good &= (size <= 0.5 * before) | (size <= tolerance)
+        at = np.where(good, trial, 0.5 * (low + high))
+        before = np.where(good, size, np.inf)
+    msg = (
+        f"the charge of a macro-ion of {sum(site.count for site in sites):g} groups did "
+        f"not converge in {WORK_CAP} steps with w = {work:g}"
+    )
+    raise ConvergenceError(msg, hint="check the groups and molar mass of the protein")
+
+
+def _independent(
+    sites: tuple[Sites, ...], step_k: tuple[Array, ...], u: Array
+) -> tuple[Array, Array]:
+    """Net charge of independent groups and its variance."""
     charge, variance = np.zeros(np.shape(u)), np.zeros(np.shape(u))
     for site, constant in zip(sites, step_k, strict=True):
         ratio = u * constant

@@ -200,7 +200,9 @@ def _macro_ion_sums(eq: Equilibrium, amount: Array, u: Array) -> Sums:
             eq.ladder.curve, np.log10(u), -np.log10(eq.step_k[0])
         )
     else:
-        charge, variance = macro_ion.sites_charge(eq.ladder.sites, eq.step_k, u)
+        charge, variance = macro_ion.sites_charge(
+            eq.ladder.sites, eq.step_k, u, eq.ladder.work
+        )
     zero = np.zeros(np.shape(u))
     total = amount * charge
     held = total - least_charge(eq.ladder) * amount

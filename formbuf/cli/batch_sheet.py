@@ -32,6 +32,7 @@ from formbuf.cli.options import (
     OutputOption,
     open_library,
 )
+from formbuf.errors import UsageError
 
 app = command_app()
 
@@ -65,29 +66,35 @@ def batch_sheet_command(
     ] = None,
     right_at: Annotated[
         str | None,
-        typer.Option(metavar="C", help="Temperature at which the target shall hold."),
+        typer.Option(
+            metavar="C", help="Temperature at which the target pH shall hold."
+        ),
     ] = None,
     grade: Annotated[
         list[str] | None,
-        typer.Option(metavar="MATERIAL=GRADE", help="Grade in hand, of the tables."),
+        typer.Option(
+            metavar="MATERIAL=GRADE", help="Grade in hand; see `knowledge show grades`."
+        ),
     ] = None,
     assay: Annotated[
         list[str] | None,
-        typer.Option(metavar="MATERIAL=PERCENT", help="Assay of the grade in hand."),
+        typer.Option(metavar="MATERIAL=PERCENT", help="Assay of the grade in hand, %."),
     ] = None,
     moisture: Annotated[
         list[str] | None,
         typer.Option(
-            metavar="MATERIAL=PERCENT", help="Water beyond that of the formula."
+            metavar="MATERIAL=PERCENT", help="Water beyond water of crystallisation, %."
         ),
     ] = None,
     strength: Annotated[
         list[str] | None,
-        typer.Option(metavar="MATERIAL=MOL_L", help="Strength of a titrant."),
+        typer.Option(metavar="MATERIAL=MOL_L", help="Strength of a titrant, mol/L."),
     ] = None,
     density: Annotated[
         list[str] | None,
-        typer.Option(metavar="MATERIAL=KG_L", help="Density of a liquid in hand."),
+        typer.Option(
+            metavar="MATERIAL=KG_L", help="Density of a liquid in hand, kg/L."
+        ),
     ] = None,
     use: Annotated[
         list[str] | None,
@@ -101,7 +108,8 @@ def batch_sheet_command(
     """Work out a batch: what to weigh, the order of addition, what the meter must read.
 
     Two ways where there are two: acid and base forms together, or one form with strong
-    titrant. A brief proposes the concentration; materials are named by their id.
+    titrant. A formula of the brief that lists materials is weighed as it is. Materials
+    are named by their id.
     """
     from formbuf.cli.emit import Target, emit
 
@@ -120,6 +128,7 @@ def batch_sheet_command(
         measure_at,
     )
     check_form(asked)
+    check_size(volume, mass)
     in_hand = {
         "grades": named("--grade", grade),
         "assay_percent": pairs("--assay", assay),
@@ -141,3 +150,21 @@ def batch_sheet_command(
         right_at_c=right_at_c,
     )
     emit(batch_sheet_page(sheet), target)
+
+
+def check_size(volume: str | None, mass: str | None) -> None:
+    """Refuse a batch without a size, or with two.
+
+    Raises
+    ------
+    UsageError
+        None or both of the options are given.
+    """
+    if volume is None and mass is None:
+        msg = "neither --volume nor --mass is given, allowed one of the two"
+        raise UsageError(
+            msg, hint="Give the size of the batch, for example --volume 10."
+        )
+    if volume is not None and mass is not None:
+        msg = "--mass is given beside --volume, allowed one of the two"
+        raise UsageError(msg)

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from formbuf.cli.numbers import number, numbers
+from formbuf.cli.wording import check_needed
 from formbuf.errors import InputError, UsageError
 
 if TYPE_CHECKING:
@@ -16,21 +17,25 @@ if TYPE_CHECKING:
     from formbuf.library import Library
     from formbuf.library.records import System
     from formbuf.product.brief import Brief, Completed
+    from formbuf.product.product_parts import CandidateInfo
 
+QUICK_HINT = "Give a brief file and --system, or --system, --concentration and --ph."
 BriefOption = Annotated[
-    str | None, typer.Argument(metavar="[BRIEF]", help="Product brief, a TOML file.")
+    str | None, typer.Argument(metavar="BRIEF", help="Product brief, a TOML file.")
 ]
 SystemOption = Annotated[
     str | None,
     typer.Option(
-        metavar="SYSTEM", help='Buffer system, or a pair: "histidine + acetate".'
+        metavar="SYSTEM",
+        help='Buffer system, a pair ("histidine + acetate"), or the name of a formula '
+        "of the brief.",
     ),
 ]
 ConcentrationOption = Annotated[
     str | None,
     typer.Option(
         metavar="MMOL_L",
-        help="Of the buffer (of both, for a pair), mmol/L; a brief proposes one.",
+        help="Total of the buffer, mmol/L; from the brief if absent.",
     ),
 ]
 PhOption = Annotated[str | None, typer.Option(metavar="PH", help="Target pH.")]
@@ -39,10 +44,12 @@ AddOption = Annotated[
     typer.Option(metavar="MATERIAL=MMOL_L", help="Further material; may be repeated."),
 ]
 AgentOption = Annotated[
-    str | None, typer.Option(metavar="MATERIAL", help="Fills up to --osmolality.")
+    str | None,
+    typer.Option(metavar="MATERIAL", help="Material that fills up to --osmolality."),
 ]
 OsmolalityOption = Annotated[
-    str | None, typer.Option(metavar="MOSM_KG", help="Osmolality to fill up to.")
+    str | None,
+    typer.Option(metavar="MOSM_KG", help="Osmolality to fill up to, mosmol/kg."),
 ]
 StoreOption = Annotated[
     list[str] | None,
@@ -50,21 +57,25 @@ StoreOption = Annotated[
 ]
 PrepareOption = Annotated[
     str | None,
-    typer.Option(metavar="C", help="Temperature at which it is made; 25 if absent."),
+    typer.Option(
+        metavar="C", help="Temperature of preparation; of measurement if absent."
+    ),
 ]
 MeasureOption = Annotated[
     str | None,
-    typer.Option(metavar="C", help="Temperature at which pH is meant; 25 if absent."),
+    typer.Option(
+        metavar="C", help="Temperature at which pH is measured; 25 if absent."
+    ),
 ]
 LowOption = Annotated[
-    str | None, typer.Option(metavar="PH", help="Lower limit of pH; 0.5 below.")
+    str | None,
+    typer.Option(metavar="PH", help="Lower limit of pH; 0.5 below target if absent."),
 ]
 HighOption = Annotated[
-    str | None, typer.Option(metavar="PH", help="Upper limit of pH; 0.5 above.")
+    str | None,
+    typer.Option(metavar="PH", help="Upper limit of pH; 0.5 above target if absent."),
 ]
-DoseOption = Annotated[
-    str | None, typer.Option(metavar="ML", help="Volume of a dose, mL.")
-]
+DoseOption = Annotated[str | None, typer.Option(metavar="ML", help="Dose volume, mL.")]
 
 
 @dataclass(frozen=True, slots=True)
@@ -118,7 +129,8 @@ def check_form(asked: Asked) -> None:
     Raises
     ------
     UsageError
-        Both forms, no system, or a quick form without strength and pH.
+        Both forms, no system, a quick form without strength and pH, or half of a
+        tonicity.
     """
     quick = asked.of_the_quick_form()
     if asked.brief is not None and quick:
@@ -127,22 +139,24 @@ def check_form(asked: Asked) -> None:
             f"{first} is given beside the brief {asked.brief}, allowed one or the other"
         )
         raise UsageError(msg, hint=f"Set it in {asked.brief}, or leave the brief out.")
-    if asked.system is None:
-        msg = "--system: nothing is given, allowed a buffer system or a pair"
-        raise UsageError(msg, hint="See `formbuf knowledge show systems`.")
     if asked.brief is None:
-        absent = [
-            option
-            for option, value in (
-                ("--concentration", asked.concentration),
-                ("--ph", asked.ph),
-            )
-            if value is None
-        ]
-        if absent:
-            msg = f"no brief, and {' and '.join(absent)} is not given"
-            hint = "Give a brief file, or --system, --concentration and --ph."
-            raise UsageError(msg, hint=hint)
+        needed = {
+            "--system": asked.system,
+            "--concentration": asked.concentration,
+            "--ph": asked.ph,
+        }
+        check_needed(needed, QUICK_HINT)
+    elif asked.system is None:
+        msg = (
+            "--system is not given, allowed a buffer system, a pair or a formula of "
+            "the brief"
+        )
+        raise UsageError(msg, hint="See `formbuf knowledge show systems`.")
+    if (asked.tonicity_agent is None) != (asked.osmolality is None):
+        names = ("--osmolality", "--tonicity-agent")
+        one, other = names if asked.tonicity_agent is None else names[::-1]
+        msg = f"{one} is given without {other}, allowed both or neither"
+        raise UsageError(msg)
 
 
 def bench_of(asked: Asked, library: Library) -> Bench:
@@ -197,25 +211,41 @@ def _from_brief(asked: Asked, library: Library) -> Bench:
     brief = read_brief(asked.brief)
     completed = complete(brief, library)
     own = _own_formula(completed, asked.system)
-    name = own[0] if own else asked.system
-    system = system_named(completed.library, name)
     concentration = number("--concentration", asked.concentration)
+    if own is not None and own.materials:
+        if concentration is not None:
+            msg = (
+                f"--concentration is given beside the formula {own.name!r}, whose "
+                "materials fix it, allowed one or the other"
+            )
+            raise UsageError(msg)
+        return _of_materials(completed, own)
+    name = own.system if own and own.system else asked.system
+    system = system_named(completed.library, name)
     if concentration is None and own:
-        concentration = own[1]
+        concentration = own.concentration_mmol_l
     if concentration is None:
         concentration = _proposed_mmol_l(brief, completed, system)
     return bench_from_brief(completed, system, concentration)
 
 
-def _own_formula(completed: Completed, name: str) -> tuple[str, float] | None:
-    """Return system and strength of a formula of the brief that bears the name."""
+def _own_formula(completed: Completed, name: str) -> CandidateInfo | None:
+    """Return the formula of the brief that bears the name, or has it as its key."""
+    wanted = name.strip().casefold().removeprefix("own:")
     for own in completed.brief.candidate:
-        if own.name.casefold() == name.strip().casefold():
-            if own.system is None or own.concentration_mmol_l is None:
-                msg = f"--system: {own.name!r} is a list of materials, allowed a system"
-                raise InputError(msg, hint="See `formbuf predict` for such a formula.")
-            return own.system, own.concentration_mmol_l
+        if own.name.casefold() == wanted:
+            return own
     return None
+
+
+def _of_materials(completed: Completed, own: CandidateInfo) -> Bench:
+    """Return the bench of a formula that is a list of materials."""
+    from formbuf.advice.case import case_for
+    from formbuf.advice.own_formula import system_of_materials
+    from formbuf.bench.setup import bench_from_formula
+
+    system, total = system_of_materials(case_for(completed), own)
+    return bench_from_formula(completed, system, total, own.materials)
 
 
 def _proposed_mmol_l(brief: Brief, completed: Completed, system: System) -> float:

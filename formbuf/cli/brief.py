@@ -25,7 +25,7 @@ app = command_app("Write a product brief by questions, check one, or print its s
 )
 def new_command(
     brief: Annotated[
-        str, typer.Argument(metavar="[BRIEF]", help="File to write.")
+        str, typer.Argument(metavar="BRIEF", help="File to write.")
     ] = "brief.toml",
     knowledge: KnowledgeOption = None,
 ) -> None:
@@ -42,7 +42,7 @@ def new_command(
     path = Path(brief)
     brief_new.require_terminal(sys.stdin, sys.stdout)
     brief_new.refuse_existing(path)
-    brief_new.talk(
+    brief_new.hold_interview(
         open_library(knowledge),
         path,
         brief_new.terminal_ask,
@@ -69,13 +69,15 @@ def check_command(
     from formbuf.output.brief_page import brief_page
     from formbuf.product.brief import complete, read_brief
 
-    done = complete(read_brief(brief), open_library(knowledge))
+    read = read_brief(brief)
+    done = complete(read, open_library(knowledge))
     case = case_for(done)
     check_overrides(
         case.brief.override,
         case.rulebook,
         screens=SCREENS,
         systems=case.library.systems,
+        origin=read.origin,
     )
     emit(brief_page(done, brief), target)
 

@@ -1,4 +1,4 @@
-"""The talk of ``formbuf brief new``: asks, explains, goes back, writes the brief.
+"""The dialogue of ``formbuf brief new``: asks, explains, goes back, writes the brief.
 
 Lines are read and written through two functions, so that a test can play the user.
 """
@@ -21,9 +21,10 @@ Ask = Callable[[str], str]
 Say = Callable[[str], None]
 
 WELCOME = """\
-A guided brief. Answer each question and press Enter; what you do not know, leave
-empty. Type ? to have a question explained, back to go back one question, done to
-write the brief with the rest left open. Ctrl-C leaves without writing anything.
+A guided brief. Answer each question and press Enter. What you do not know,
+leave empty: it is assumed, and marked so. Type ? to have a question explained,
+back to go back one question, done to write the brief with the rest left open.
+Ctrl-C leaves without writing anything.
 """
 #: Most facts asked for at the end.
 MOST_FACTS = 6
@@ -47,7 +48,7 @@ def refuse_existing(path: Path) -> None:
         raise UsageError(msg, hint="Name another file, or move this one away.")
 
 
-def talk(library: Library, path: Path, ask: Ask, say: Say) -> None:
+def hold_interview(library: Library, path: Path, ask: Ask, say: Say) -> None:
     """Ask for a brief and write it.
 
     Parameters
@@ -156,9 +157,14 @@ def _facts_worth_asking(interview: Interview) -> list[MissingFact]:
     """Return the facts that could change the order, for what is answered so far."""
     from formbuf.advice.shortlist import shortlist
     from formbuf.product.brief import brief_from_mapping
+    from formbuf.product.interview import GROUPS
 
     result = shortlist(brief_from_mapping(interview.data()), interview.library)
-    asked = [m for m in result.missing_facts if m.fact.held_in.startswith("facts.")]
+    asked = [
+        missing
+        for missing in result.missing_facts
+        if missing.fact.held_in.startswith("facts.") or missing.fact.held_in == GROUPS
+    ]
     return asked[:MOST_FACTS]
 
 

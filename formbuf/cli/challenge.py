@@ -64,7 +64,7 @@ def challenge_command(
     added: Annotated[
         list[str] | None,
         typer.Option(
-            metavar="MMOL_L", help="Strong base, negative for acid; may be repeated."
+            metavar="MMOL_L", help="Strong base, minus for acid; may be repeated."
         ),
     ] = None,
     to_ph: Annotated[
@@ -77,11 +77,15 @@ def challenge_command(
     ] = None,
     carbon_dioxide: Annotated[
         str | None,
-        typer.Option(metavar="PA", help="Pressure of carbon dioxide; air if absent."),
+        typer.Option(
+            metavar="PA", help="Pressure of carbon dioxide, Pa; of air if absent."
+        ),
     ] = None,
     headspace: Annotated[
         str | None,
-        typer.Option(metavar="RATIO", help="Gas over solution by volume, closed."),
+        typer.Option(
+            metavar="RATIO", help="Closed headspace: gas over solution, by volume."
+        ),
     ] = None,
     figure: Annotated[
         str | None, typer.Option(metavar="FILE", help="Draw it: .svg or .png.")

@@ -64,7 +64,7 @@ def dilute_command(
     fold: Annotated[
         list[str] | None,
         typer.Option(
-            metavar="TIMES", help="Volume after over before; may be repeated."
+            metavar="TIMES", help="Dilution factor, 10 for 1 in 10; may be repeated."
         ),
     ] = None,
     at: Annotated[
@@ -89,7 +89,7 @@ def dilute_command(
     target = Target(format_, json_, output)
     target.check()
     if into is None:
-        msg = "--into: nothing is given, allowed a diluent"
+        msg = "--into is not given, allowed a diluent"
         raise UsageError(msg, hint="See `formbuf knowledge show diluents`.")
     asked = Asked(
         brief,

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from formbuf.cli.frame import command_app, examples
+from formbuf.cli.numbers import number, numbers
 from formbuf.cli.options import (
     FormatOption,
     JsonOption,
@@ -16,7 +17,8 @@ from formbuf.cli.options import (
     OutputOption,
     open_library,
 )
-from formbuf.errors import InputError, UsageError
+from formbuf.cli.wording import check_needed
+from formbuf.errors import UsageError
 
 if TYPE_CHECKING:
     from formbuf.advice.freeze_thaw_results import FreezeThaw
@@ -48,37 +50,39 @@ SOLUTES: Mapping[str, tuple[str, str]] = {
 def freeze_thaw_command(
     brief: Annotated[
         str | None,
-        typer.Argument(metavar="[BRIEF]", help="Product brief, a TOML file."),
+        typer.Argument(metavar="BRIEF", help="Product brief, a TOML file."),
     ] = None,
     system: Annotated[
         str | None, typer.Option(metavar="SYSTEM", help="Buffer system.")
     ] = None,
     concentration: Annotated[
-        float | None, typer.Option(metavar="MMOL_L", help="Of the buffer, mmol/L.")
+        str | None, typer.Option(metavar="MMOL_L", help="Total of the buffer, mmol/L.")
     ] = None,
-    ph: Annotated[float | None, typer.Option(help="pH as set at 25 C.")] = None,
+    ph: Annotated[
+        str | None, typer.Option(metavar="PH", help="Target pH, as set at 25 C.")
+    ] = None,
     to: Annotated[
-        float | None,
+        str | None,
         typer.Option(metavar="C", help="Coldest temperature, -30 to 0; -20 if absent."),
     ] = None,
     nacl: Annotated[
-        float | None, typer.Option(metavar="MMOL_L", help="Sodium chloride, mmol/L.")
+        str | None, typer.Option(metavar="MMOL_L", help="Sodium chloride, mmol/L.")
     ] = None,
     kcl: Annotated[
-        float | None,
+        str | None,
         typer.Option(
             "--kcl", "--potassium", metavar="MMOL_L", help="Potassium chloride, mmol/L."
         ),
     ] = None,
     sucrose: Annotated[
-        float | None, typer.Option(metavar="PERCENT", help="Sucrose, % w/v.")
+        str | None, typer.Option(metavar="PERCENT", help="Sucrose, % w/v.")
     ] = None,
     trehalose: Annotated[
-        float | None,
+        str | None,
         typer.Option(metavar="PERCENT", help="Trehalose dihydrate, % w/v."),
     ] = None,
     at: Annotated[
-        list[float] | None,
+        list[str] | None,
         typer.Option(metavar="C", help="Further temperature; may be repeated."),
     ] = None,
     figure: Annotated[
@@ -101,20 +105,23 @@ def freeze_thaw_command(
     target = Target(format_, json_, output)
     target.check()
     check_figure(figure, output)
-    amounts = {
+    given = {
         "--nacl": nacl,
         "--kcl": kcl,
         "--sucrose": sucrose,
         "--trehalose": trehalose,
     }
     quick = {"--system": system, "--concentration": concentration, "--ph": ph}
-    check_form(brief, {**quick, **amounts})
+    check_form(brief, {**quick, **given})
+    amounts = {option: number(option, text) for option, text in given.items()}
+    mmol_l, target_ph = number("--concentration", concentration), number("--ph", ph)
+    to_c, at_c = number("--to", to), numbers("--at", at)
     library = open_library(knowledge)
     if brief is not None:
-        result = _of_brief(brief, library, to, tuple(at or ()))
+        result = _of_brief(brief, library, to_c, at_c)
     else:
         result = _of_composition(
-            library, system, concentration, ph, to, amounts, tuple(at or ())
+            library, system, mmol_l, target_ph, to_c, amounts, at_c
         )
     from formbuf.output.freeze_thaw_page import freeze_thaw_page
 
@@ -145,15 +152,13 @@ def check_figure(figure: str | None, output: str | None) -> None:
         raise UsageError(msg)
 
 
-def check_form(brief: str | None, given: Mapping[str, float | str | None]) -> None:
+def check_form(brief: str | None, given: Mapping[str, str | None]) -> None:
     """Refuse a mixture of both forms, or too little of either.
 
     Raises
     ------
     UsageError
-        Nothing is given, or both forms.
-    InputError
-        A value of the quick form is absent.
+        Both forms, or an option that the quick form needs is not given.
     """
     named = [option for option, value in given.items() if value is not None]
     if brief is not None:
@@ -162,13 +167,10 @@ def check_form(brief: str | None, given: Mapping[str, float | str | None]) -> No
             raise UsageError(msg, hint=f"Set it in {brief}, or leave the brief out.")
         return
     needed = ("--system", "--concentration", "--ph")
-    absent = [option for option in needed if given[option] is None]
-    if len(absent) == len(needed):
-        msg = f"no brief, and {', '.join(needed)} are not given"
-        raise UsageError(msg, hint="Give a brief file, or these three options.")
-    if absent:
-        msg = f"{' and '.join(absent)}: absent, allowed a value for each of {', '.join(needed)}"
-        raise InputError(msg, hint="For example --concentration 50 --ph 7.4.")
+    check_needed(
+        {option: given[option] for option in needed},
+        "Give a brief file, or --system, --concentration and --ph.",
+    )
 
 
 def _of_brief(

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+import sys
 from collections.abc import Iterator
 from importlib.resources import files
 from typing import Annotated
@@ -19,7 +20,7 @@ app = command_app()
 @app.command("guide", epilog=examples("formbuf guide", "formbuf guide getting-started"))
 def guide_command(
     topic: Annotated[
-        str | None, typer.Argument(metavar="[TOPIC]", help="Page to show.")
+        str | None, typer.Argument(metavar="TOPIC", help="Page to show.")
     ] = None,
     output: OutputOption = None,
 ) -> None:
@@ -58,9 +59,17 @@ def page(topic: str) -> str:
 
 def listing() -> str:
     """Return the list of pages."""
+    from formbuf.cli.emit import output_width
+    from formbuf.output.tables import LEAST_WIDTH, wrapped
+
     width = max(map(len, TOPICS))
-    lines = ["Pages of the guide, in the order in which they are read:", ""]
-    lines += [f"  {name:<{width}}  {about}" for name, about in TOPICS.items()]
+    room = max(output_width(sys.stdout), LEAST_WIDTH)
+    lines = wrapped("Pages of the guide, in the order in which they are read:", room)
+    lines.append("")
+    for name, about in TOPICS.items():
+        first, *rest = wrapped(about, room - width - 4)
+        lines.append(f"  {name:<{width}}  {first}")
+        lines += [" " * (width + 4) + text for text in rest]
     lines += ["", "Show one with `formbuf guide TOPIC`."]
     return "\n".join(lines) + "\n"
 

@@ -48,7 +48,7 @@ def show_command(
     table: Annotated[str, typer.Argument(metavar="TABLE", help="Name of a table.")],
     row: Annotated[
         str | None,
-        typer.Argument(metavar="[ROW]", help="Show the rows of this key only."),
+        typer.Argument(metavar="ROW", help="Show the rows of this key only."),
     ] = None,
     knowledge: KnowledgeOption = None,
     format_: FormatOption = None,
@@ -82,9 +82,7 @@ def show_command(
 def sources_command(
     source: Annotated[
         str | None,
-        typer.Argument(
-            metavar="[SOURCE]", help="Show one source and where it is used."
-        ),
+        typer.Argument(metavar="SOURCE", help="Show one source and where it is used."),
     ] = None,
     knowledge: KnowledgeOption = None,
     format_: FormatOption = None,

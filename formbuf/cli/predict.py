@@ -59,7 +59,7 @@ def predict_command(
     open_to_carbon_dioxide: Annotated[
         str | None,
         typer.Option(
-            metavar="PA", help="Pressure of carbon dioxide above it; closed if absent."
+            metavar="PA", help="Pressure of carbon dioxide, Pa; closed if absent."
         ),
     ] = None,
     knowledge: KnowledgeOption = None,
@@ -108,8 +108,8 @@ def parse_materials(texts: Sequence[str]) -> dict[str, float]:
         An amount that is no number.
     """
     if not texts:
-        msg = "--add: nothing is added, allowed at least one MATERIAL=AMOUNT"
-        raise UsageError(msg)
+        msg = "--add is not given, allowed at least one MATERIAL=AMOUNT"
+        raise UsageError(msg, hint="For example --add sucrose=240.")
     found: dict[str, float] = {}
     for text in texts:
         name, equals, amount = text.rpartition("=")

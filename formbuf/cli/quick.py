@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
+from formbuf.cli.wording import check_needed
 from formbuf.errors import UsageError
 
 if TYPE_CHECKING:
@@ -42,10 +43,7 @@ def brief_or_options(path: str | None, options: Mapping[str, Any]) -> Brief:
             )
             raise UsageError(msg, hint=f"Set it in {path}, or leave the brief out.")
         return read_brief(path)
-    missing = [f"--{name}" for name in ("ph", "route") if not _is_given(options[name])]
-    if missing:
-        msg = f"no brief, and {' and '.join(missing)} is not given"
-        raise UsageError(msg, hint=HINT)
+    check_needed({f"--{name}": options[name] for name in ("ph", "route")}, HINT)
     return brief_from_options(**options)
 
 

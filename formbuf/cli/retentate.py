@@ -31,6 +31,7 @@ from formbuf.cli.options import (
     OutputOption,
     open_library,
 )
+from formbuf.cli.wording import check_needed
 from formbuf.errors import UsageError
 
 app = command_app()
@@ -136,8 +137,5 @@ def check_protein(brief: str | None, given: Mapping[str, float | None]) -> None:
     if brief is not None and named:
         msg = f"{named[0]} is given beside the brief {brief}, allowed one or the other"
         raise UsageError(msg, hint="Describe the protein under [drug].")
-    absent = [option for option in given if option not in named]
-    if brief is None and absent:
-        msg = f"no brief, and {' and '.join(absent)} is not given"
-        hint = "Give --charge, --protein-mg-ml and --molar-mass."
-        raise UsageError(msg, hint=hint)
+    if brief is None:
+        check_needed(given, "Give --charge, --protein-mg-ml and --molar-mass.")

@@ -73,7 +73,7 @@ def scan_command(
     capacity of recipes over target_ph, concentration_mmol_l, temperature_c and
     load_mmol_l (strong base, negative for acid), millions in a minute.
     """
-    from formbuf.advice.scan_grid import grid_of, parse_axis
+    from formbuf.advice.scan_grid import FORM, grid_of, parse_axis
     from formbuf.cli.numbers import whole
     from formbuf.cli.quick import check_draws, check_top
     from formbuf.errors import UsageError
@@ -84,7 +84,10 @@ def scan_command(
     if output is not None and not output.strip():
         msg = "--output: the file name is empty, allowed a file"
         raise UsageError(msg)
-    grid = grid_of([parse_axis(text) for text in over or ()])
+    if not over:
+        msg = f"--over is not given, allowed at least one {FORM}"
+        raise UsageError(msg, hint="For example --over target_ph=5:7:0.5.")
+    grid = grid_of([parse_axis(text) for text in over])
     read = read_brief(brief)
     library = open_library(knowledge)
     path = Path(output) if output is not None else None
@@ -135,7 +138,7 @@ def _shortlists(scan: ShortlistScan, path: Path | None) -> None:
                 progress(point + 1, scan.grid.size)
         finally:
             progress.close()
-    _say_written(path, scan.grid.size, "points")
+    _say_written(path, scan.grid.size, "point")
 
 
 def _states(
@@ -163,7 +166,7 @@ def _states(
                 progress(first + len(columns["system"]), scan.size)
         finally:
             progress.close()
-    _say_written(path, scan.size, "states")
+    _say_written(path, scan.size, "state")
 
 
 def _say_resumed(start: int) -> None:
@@ -177,4 +180,6 @@ def _say_written(path: Path | None, count: int, what: str) -> None:
     from formbuf.cli.emit import say
 
     if path is not None:
-        say(f"Wrote {path}: {count} {what}.")
+        from formbuf.output.figures import counted
+
+        say(f"Wrote {path}: {counted(count, what)}.")

@@ -31,10 +31,13 @@ def sensitivity_command(
     brief: BriefArgument,
     reach: Annotated[
         str | None,
-        typer.Option(metavar="PH", help="How far the map goes; 1 if absent."),
+        typer.Option(
+            metavar="PH",
+            help="Reach of the map either side of the target; 1 if absent.",
+        ),
     ] = None,
     step: Annotated[
-        str | None, typer.Option(metavar="PH", help="Its step; 0.1 if absent.")
+        str | None, typer.Option(metavar="PH", help="Step of the map; 0.1 if absent.")
     ] = None,
     figure: Annotated[
         str | None, typer.Option(metavar="FILE", help="Draw the map: .svg or .png.")

@@ -32,7 +32,7 @@ app = command_app()
 def shortlist_command(
     brief: Annotated[
         str | None,
-        typer.Argument(metavar="[BRIEF]", help="Product brief, a TOML file."),
+        typer.Argument(metavar="BRIEF", help="Product brief, a TOML file."),
     ] = None,
     ph: Annotated[str | None, typer.Option(metavar="PH", help="Target pH.")] = None,
     route: Annotated[
@@ -53,7 +53,10 @@ def shortlist_command(
     ] = None,
     tonicity_agent: Annotated[
         str | None,
-        typer.Option(metavar="MATERIAL", help="What fills the osmolality up."),
+        typer.Option(
+            metavar="MATERIAL",
+            help="Material that fills up to the osmolality aimed at.",
+        ),
     ] = None,
     volume_ml: Annotated[
         str | None, typer.Option(metavar="ML", help="Dose volume, mL.")

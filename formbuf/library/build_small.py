@@ -86,6 +86,7 @@ def build_route_limits(rows: Iterable[Row]) -> Mapping[str, RouteLimit]:
             locator=row.text("locator"),
             note=row.text("note"),
             overlay=row.overlay,
+            usual_volume_is=row.text("usual_volume_is"),
         )
         for row in rows
     }

@@ -286,7 +286,11 @@ class KindPrecedent:
 
 @dataclass(frozen=True, slots=True)
 class RouteLimit:
-    """Range of pH, osmolality and volume that a route bears."""
+    """Range of pH, osmolality and volume that a route bears.
+
+    ``usual_volume_is`` says whether the usual volume is ``typical`` or the ``largest``
+    that is usual; empty where nobody said.
+    """
 
     route: str
     ph_low: float
@@ -299,6 +303,7 @@ class RouteLimit:
     locator: str = ""
     note: str = ""
     overlay: bool = False
+    usual_volume_is: str = ""
 
 
 @dataclass(frozen=True, slots=True)

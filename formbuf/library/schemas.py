@@ -249,6 +249,7 @@ ROUTES = Schema(
         _number("osmolality_low_mosm_kg", 0, 5000),
         _number("osmolality_high_mosm_kg", 0, 5000),
         _number("usual_volume_ml", 0, 10000),
+        Column("usual_volume_is", choices=("typical", "largest")),
         source(),
         Column("locator"),
         basis(),

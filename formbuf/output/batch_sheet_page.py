@@ -119,7 +119,7 @@ def blocks(sheet: BatchSheet) -> list[Block]:
     found: list[Block] = [
         Heading(f"Batch sheet: {size} of {made_words(bench)}", 1),
         Paragraph(
-            f"Target {target_words(bench)}"
+            f"Target {target_words(bench).removeprefix('target ')}"
             + (
                 f", to hold at {sheet.target_temperature_c:g} C"
                 if sheet.target_temperature_c != bench.measure_temperature_c
@@ -236,8 +236,8 @@ def _storage(way: WaySheet) -> Grid:
     return Grid(
         (
             number("To hold the target at, C"),
-            number("meter at preparation", short="at preparation"),
-            number("meter at 25 C", short="at 25 C"),
+            number("Meter at preparation, pH", short="Meter at pre-\nparation, pH"),
+            number("Meter at 25 C, pH", short="Meter at\n25 C, pH"),
         ),
         tuple(
             (
@@ -271,7 +271,11 @@ def _errors(way: WaySheet) -> Grid:
         ("meter set 2 K too high", decimals(way.compensation_d_ph, 3, sign=True), "-")
     )
     return Grid(
-        (Column("What"), number("pH"), number("mosmol/kg")),
+        (
+            Column("What"),
+            number("pH changes by", short="pH changes\nby"),
+            number("mosmol/kg changes by", short="mosmol/kg\nchanges by"),
+        ),
         tuple(rows),
     )
 
@@ -280,10 +284,10 @@ def _wrong(way: WaySheet) -> Grid:
     return Grid(
         (
             Column("Weighed by mistake"),
-            Column("instead of", from_width=120),
+            Column("Instead of", from_width=120),
             number("pH"),
-            number("change"),
-            number("moles, %"),
+            number("pH changes by", short="pH changes\nby"),
+            number("Moles, %"),
         ),
         tuple(
             (

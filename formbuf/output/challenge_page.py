@@ -81,7 +81,7 @@ def blocks(result: Challenge) -> list[Block]:
         ),
         _points(result),
     ]
-    found += section("What uses up the window, mmol/L", _rooms(result))
+    found += section("What uses up the window", _rooms(result))
     found += section("In contact with carbon dioxide", _gas(result))
     found += section("Notes", Items(result.notes))
     found.append(Paragraph(words.CAUTION))
@@ -110,7 +110,7 @@ def _points(result: Challenge) -> Grid:
         number("pH"),
         number("pH without\nbuffer"),
         number("Capacity,\nmmol/L/pH"),
-        Column(""),
+        Column("Note"),
     ]
     return Grid(tuple([number("C"), *columns] if several else columns), tuple(rows))
 
@@ -121,10 +121,10 @@ def _rooms(result: Challenge) -> Grid:
             number("C"),
             Column("Stands for"),
             number("pH"),
-            number("acid"),
-            number("base"),
-            number("acid without\nbuffer"),
-            number("base without\nbuffer"),
+            number("Acid,\nmmol/L"),
+            number("Base,\nmmol/L"),
+            number("Acid without\nbuffer,\nmmol/L"),
+            number("Base without\nbuffer,\nmmol/L"),
         ),
         tuple(
             (
@@ -148,7 +148,7 @@ def _gas(result: Challenge) -> Grid:
             number("pH"),
             number("pH without\nbuffer"),
             number("CO2, Pa"),
-            number("carbonate,\nmmol/L"),
+            number("Carbonate,\nmmol/L"),
         ),
         tuple(
             (

@@ -85,10 +85,10 @@ def _grid(result: Dilution) -> Grid:
     columns = [
         number("Fold"),
         number("pH, diluent\nat acid end"),
-        number("with CO2\nof the air"),
-        number("at basic\nend"),
+        number("pH with CO2\nof the air"),
+        number("pH at basic\nend"),
         number("Capacity,\nmmol/L/pH"),
-        number("mosmol\n/kg"),
+        number("mosmol/kg", short="mosmol\n/kg"),
         number("Acidity to 7.4,\n" + ("mmol/dose" if has_dose else "mmol/L")),
     ]
     rows = []

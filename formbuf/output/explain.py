@@ -3,8 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import Any
 
+from formbuf.advice.loads import LoadItem
 from formbuf.advice.results import Candidate, Shortlist
 from formbuf.output import explain_parts as parts
 from formbuf.output import serialise, words
@@ -96,7 +98,7 @@ def _screens(c: Candidate) -> Grid:
             s.id,
             s.text,
             s.basis,
-            f"set aside by {s.overridden_by}" if s.overridden_by else "drops it",
+            f"set aside by {s.overridden_by}" if s.overridden_by else "screens it out",
         )
         for s in c.screens
     )
@@ -131,7 +133,7 @@ def _criteria(result: Shortlist, c: Candidate) -> Grid:
         number("Desirability", short="Desira-\nbility"),
         number("Weight", 100),
         Column("1 at / floor at", from_width=100, keep=True),
-        Column("", from_width=100),
+        Column("Note", from_width=100),
         Column("Finding"),
     )
     return Grid(columns, tuple(rows))
@@ -182,6 +184,29 @@ def _amount(value: float | None, unit: str) -> str:
     return ABSENT if value is None else f"{significant(value)} {unit}"
 
 
+def merged_loads(items: Sequence[LoadItem]) -> list[LoadItem]:
+    """Return loads with acid and base over shelf life as one, where one note says both."""
+    merged: list[LoadItem] = []
+    for item in items:
+        before = merged[-1] if merged else None
+        if before is not None and _same_note(before, item):
+            merged[-1] = replace(
+                before,
+                name=f"acid and {item.name}",
+                acid_mmol_l=before.acid_mmol_l + item.acid_mmol_l,
+                base_mmol_l=before.base_mmol_l + item.base_mmol_l,
+            )
+        else:
+            merged.append(item)
+    return merged
+
+
+def _same_note(one: LoadItem, other: LoadItem) -> bool:
+    said = [(i.basis, i.source, i.reason, i.is_default) for i in (one, other)]
+    names = one.name.removeprefix("acid "), other.name.removeprefix("base ")
+    return said[0] == said[1] and names[0] == names[1] and one.name != other.name
+
+
 def _loads(result: Shortlist) -> Grid:
     rows: list[tuple[str, ...]] = [
         (
@@ -191,7 +216,7 @@ def _loads(result: Shortlist) -> Grid:
             item.basis,
             item.reason,
         )
-        for item in result.loads.items
+        for item in merged_loads(result.loads.items)
     ]
     total = result.loads
     rows.append(
@@ -239,7 +264,7 @@ def _states(c: Candidate) -> Grid:
         number("Base room,\nmmol/L"),
         number("of the buffer,\nmmol/L/pH", WIDE),
         number("Ionic strength,\nmol/kg", WIDE),
-        Column("", from_width=WIDE),
+        Column("Note", from_width=WIDE),
     )
     return Grid(columns, rows)
 

@@ -68,3 +68,14 @@ def plainly(value: object) -> str:
     if isinstance(value, list | tuple | set | frozenset):
         return ", ".join(plainly(item) for item in value) or ABSENT
     return str(value)
+
+
+def counted(count: int, one: str, many: str = "") -> str:
+    """Write a count with its noun in the right number.
+
+    Examples
+    --------
+    >>> counted(1, "row"), counted(0, "row"), counted(2, "known miss", "known misses")
+    ('1 row', '0 rows', '2 known misses')
+    """
+    return f"{count} {one if count == 1 else many or one + 's'}"

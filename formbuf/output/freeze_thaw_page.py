@@ -101,6 +101,7 @@ def _quick(result: FreezeThaw) -> list[Block]:
     )
     found += section("Notes on validity", Items(tuple(_notes(result))))
     found += section("Sources", source_items(result))
+    found += section("Warnings", words.warnings_items(result.warnings))
     found.append(Paragraph(words.CAUTION))
     return found
 
@@ -244,7 +245,7 @@ def _wide_table(result: FreezeThaw) -> Grid:
     )
     usual = result.brief.ph.measure_temperature_c
     minor = {p.temperature_c for s in result.systems for p in s.liquid if _is_minor(p)}
-    columns = [Column("System")]
+    columns = [Column("System, its pH at")]
     columns += [
         number(f"{t:g} C", 100 if t in minor and t != usual else 0) for t in liquid
     ]
@@ -288,7 +289,7 @@ def _legend(result: FreezeThaw) -> str:
         "left to right, thawing back."
     )
     if len({p.assumption for p in paths}) == 1:
-        text += " Nothing is known of the other bound, where a salt would crystallise."
+        text += " The other bound, where a salt would crystallise, is not computed."
     if any(p.metastable for p in paths):
         text += (
             " In brackets: metastable, with the last salt held back; at equilibrium no "
@@ -302,10 +303,10 @@ def _legend(result: FreezeThaw) -> str:
 def _summary(result: FreezeThaw) -> Grid:
     columns = (
         Column("System"),
-        number("Cooling\nalone"),
-        number("Freezing\nadds"),
+        number("Cooling\nalone, pH"),
+        number("Freezing\nadds, pH"),
         Column("Class"),
-        Column("Published\nchange"),
+        Column("Published\nchange, pH"),
         Column("Verdict"),
     )
     rows = [

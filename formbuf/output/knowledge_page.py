@@ -12,7 +12,7 @@ from formbuf.errors import UnknownNameError
 from formbuf.library import Library
 from formbuf.library.tables import Cell, Row, Schema
 from formbuf.output import serialise
-from formbuf.output.figures import plainly
+from formbuf.output.figures import counted, plainly
 from formbuf.output.leaves import leaves
 from formbuf.output.page import (
     Block,
@@ -206,9 +206,8 @@ def table_page(library: Library, table: TableView, key: str | None = None) -> Pa
         title = Heading(f"{table.name}, knowledge {library.version}", 1)
         if key is not None:
             return [title, *_upright(table, rows)]
-        hint = (
-            f"{len(rows)} rows, {len(table.columns)} columns; --format csv shows all."
-        )
+        size = f"{counted(len(rows), 'row')}, {counted(len(table.columns), 'column')}"
+        hint = f"{size}; --format csv shows all."
         return [title, _grid(table, rows), Paragraph(hint)]
 
     return Page(payload, records, blocks)
@@ -317,9 +316,8 @@ def uses_of(
 
 def check_page(library: Library, faults: Sequence[str], tables: int, rows: int) -> Page:
     """Return the outcome of the audit as a page."""
-    said = f"{tables} tables with {rows} rows: " + (
-        "no fault." if not faults else f"{len(faults)} faults."
-    )
+    found = counted(len(faults), "fault") if faults else "no fault"
+    said = f"{counted(tables, 'table')} with {counted(rows, 'row')}: {found}."
     return Page(
         lambda: {
             **serialise.header(CHECK_SCHEMA, library),

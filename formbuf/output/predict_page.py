@@ -19,6 +19,7 @@ from formbuf.output.page import (
     number,
     section,
 )
+from formbuf.product.overlay_changes import overlay_notice
 
 PREDICT_SCHEMA = "formbuf.predict/1"
 
@@ -45,7 +46,7 @@ def predict_dict(result: Prediction) -> dict[str, Any]:
         "water_kg_l": result.water_kg_l,
         "open_to_carbon_dioxide_pa": result.open_to_carbon_dioxide_pa,
         "states": [serialise.plain(state) for state in result.states],
-        "warnings": [],
+        "warnings": list(_overlay(result)),
     }
 
 
@@ -69,7 +70,7 @@ def blocks(result: Prediction) -> list[Block]:
     if pressure is not None:
         text = f"Open to {significant(pressure)} Pa of carbon dioxide."
         found.append(Paragraph(text))
-    found += section("Notes", Items(_notes(result)))
+    found += section("Notes", Items((*_overlay(result), *_notes(result))))
     found.append(Paragraph(words.CAUTION))
     return found
 
@@ -98,6 +99,11 @@ def _states(result: Prediction) -> Grid:
         for row, s in zip(rows, result.states, strict=True):
             row.append(significant(s.carbon_dioxide_pa))
     return Grid(tuple(columns), tuple(tuple(row) for row in rows))
+
+
+def _overlay(result: Prediction) -> tuple[str, ...]:
+    """Return the line on the overlay that the result rests on, if there is one."""
+    return tuple(filter(None, (overlay_notice(result.library),)))
 
 
 def _notes(result: Prediction) -> tuple[str, ...]:

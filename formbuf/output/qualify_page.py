@@ -7,7 +7,7 @@ from typing import Any
 
 from formbuf.library import Library
 from formbuf.output import serialise
-from formbuf.output.figures import decimals
+from formbuf.output.figures import counted, decimals
 from formbuf.output.page import (
     Block,
     Column,
@@ -62,10 +62,11 @@ def record_page(result: Qualification, library: Library) -> Page:
 def verdict(result: Qualification) -> str:
     """Return the outcome in one sentence."""
     failed = len(result.failed)
-    said = {0: "none fails", 1: "1 fails"}.get(failed, f"{failed} fail")
+    said = counted(failed, "fails", "fail") if failed else "none fails"
+    misses = counted(result.count("known miss"), "known miss", "known misses")
     return (
-        f"{len(result.groups)} groups with {result.cases} cases: {said}; "
-        f"{result.count('pass')} pass, {result.count('known miss')} known misses, "
+        f"{counted(len(result.groups), 'group')} with {counted(result.cases, 'case')}: "
+        f"{said}; {counted(result.count('pass'), 'passes', 'pass')}, {misses}, "
         f"{result.count('shown')} shown only, {result.seconds:.1f} s."
     )
 

@@ -18,6 +18,7 @@ from formbuf.output.page import (
     section,
 )
 from formbuf.output.serialise import header
+from formbuf.product.overlay_changes import overlay_notice
 
 if TYPE_CHECKING:
     from formbuf.advice.decision_map import DecisionMap, MapPoint, Place
@@ -49,20 +50,21 @@ def sensitivity_page(found: Sensitivity, chart: DecisionMap, library: Library) -
             "decision_map": chart.to_dict(),
         },
         records=lambda: _records(chart),
-        blocks=lambda: _blocks(found, chart),
+        blocks=lambda: _blocks(found, chart, overlay_notice(library)),
     )
 
 
-def _blocks(found: Sensitivity, chart: DecisionMap) -> list[Block]:
+def _blocks(found: Sensitivity, chart: DecisionMap, overlay: str) -> list[Block]:
     blocks: list[Block] = [Heading(f"{chart.title}: what would change the lead", 1)]
     if found.lead is None:
-        blocks.append(Paragraph("No candidate is acceptable as the brief stands."))
+        blocks.append(Paragraph("No buffer is acceptable as the brief stands."))
     else:
         blocks.append(Paragraph(f"Lead as it stands: {found.lead_name}.", strong=True))
     names = {p.system: p.name for point in chart.points for p in point.places}
     blocks += section("Requirements", _requirements(found))
     blocks += section("Weights", _weights(found, names))
     blocks += section("Lead and back-up over the target pH", _chart(chart))
+    blocks += [Paragraph(f"{overlay[0].upper()}{overlay[1:]}.")] if overlay else []
     blocks.append(Paragraph(words.CAUTION))
     return blocks
 

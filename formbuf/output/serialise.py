@@ -52,8 +52,18 @@ def header(schema: str, library: Library) -> dict[str, Any]:
             "overlay": None if overlay is None else str(overlay),
             "overlay_sha256": library.overlay_sha256 or None,
             "precedent_file": plain(library.precedent_file),
+            "overlay_changes": _overlay_changes(library),
         },
     }
+
+
+def _overlay_changes(library: Library) -> list[dict[str, Any]]:
+    """Return how many rows of which tables the overlay changes or adds."""
+    if library.overlay is None:
+        return []
+    from formbuf.product.overlay_changes import overlay_changes
+
+    return [plain(change) for change in overlay_changes(library)]
 
 
 def plain(value: Any) -> Any:

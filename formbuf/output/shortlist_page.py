@@ -7,6 +7,7 @@ from typing import Any
 
 from formbuf.advice.criteria_table import CRITERIA
 from formbuf.advice.results import Candidate, LiquidState, Shortlist
+from formbuf.library.rule_tables import ANY, ANY_BUFFER
 from formbuf.output import serialise, words
 from formbuf.output.confidence_page import confidence_blocks, confidence_row
 from formbuf.output.figures import decimals, plainly, significant
@@ -175,6 +176,7 @@ def _worst(shown: Sequence[Candidate]) -> Grid:
 def _findings(result: Shortlist, candidates: Sequence[Candidate]) -> Grid:
     """Return what warns of the best candidates; notes are left to explain."""
     common = {finding.rule for finding in result.product_findings}
+    common |= open_alike(result)
     rows = [
         (c.name if first else "", words.finding_words(f))
         for c in candidates
@@ -187,6 +189,22 @@ def _findings(result: Shortlist, candidates: Sequence[Candidate]) -> Grid:
         )
     ]
     return Grid((Column("System"), Column("Finding")), tuple(rows))
+
+
+def open_alike(result: Shortlist) -> set[str]:
+    """Open rules about no buffer in particular, behind a question that is asked.
+
+    Each is said once, as that question, and not again for each candidate.
+    """
+    asked = {rule for missing in result.missing_facts for rule in missing.rules}
+    return {
+        f.rule
+        for c in result.heads
+        for f in c.findings
+        if f.outcome == "not evaluable"
+        and f.rule in asked
+        and {ANY, ANY_BUFFER} & set(f.record.concerns)
+    }
 
 
 def _marked(items: Sequence[Any]) -> list[tuple[bool, Any]]:

@@ -1,6 +1,8 @@
 """Blocks as text for the terminal, set by rich.
 
-Narrow terminals show the columns that matter, wide ones more. Numbers stand right.
+Narrow terminals show the columns that matter, wide ones more; where even these do not
+fit side by side without breaking words, each row is written as lines of its own.
+Numbers stand right.
 Headings are bold on a terminal that can do it; there is no colour, so nothing is lost
 in a pipe, in a file or on paper.
 """
@@ -13,16 +15,29 @@ import textwrap
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, TextIO
 
-from formbuf.output.page import WIDE, Block, Column, Grid, Heading, Items, Paragraph
+from formbuf.output.page import (
+    NARROW,
+    WIDE,
+    Block,
+    Column,
+    Grid,
+    Heading,
+    Items,
+    Paragraph,
+)
 
 if TYPE_CHECKING:
     from rich.console import Console, RenderableType
 
 #: Narrower terminals are written to as if they had this width [characters].
-LEAST_WIDTH = 60
+LEAST_WIDTH = 40
 #: Longer words are broken where there is no room [characters].
 LONGEST_WORD = 24
+#: Behind these a long word is broken rather than elsewhere.
+SEAMS = "_./-,:=]"
 GAP = 2
+#: By which the lines of a row stand in [characters].
+STEP = 2
 
 
 def to_text(blocks: Sequence[Block], width: int, *, bold: bool = False) -> str:
@@ -32,7 +47,7 @@ def to_text(blocks: Sequence[Block], width: int, *, bold: bool = False) -> str:
     ----------
     blocks : sequence of Block
     width : int
-        Longest line [characters], at least 60.
+        Longest line [characters], at least 40.
     bold : bool
         Whether headings are set bold for a terminal.
     """
@@ -81,8 +96,38 @@ def _show(console: Console, block: Block, room: int) -> None:
             line.add_column(overflow="fold")
             line.add_row(Text("*"), Text(printable(item), overflow="fold"))
             console.print(line)
+    elif _is_too_wide(block, room):
+        _stack(console, block, room)
     else:
         console.print(_table(block, room))
+
+
+def _is_too_wide(grid: Grid, room: int) -> bool:
+    """Whether a narrow terminal would break words of a table."""
+    if room >= NARROW or not grid.rows:
+        return False
+    shown = columns_shown(grid, room)
+    return sum(_least(grid, i, room) for i in shown) + GAP * (len(shown) - 1) > room
+
+
+def _stack(console: Console, grid: Grid, room: int) -> None:
+    """Write each row as lines of header and value, what is empty left out."""
+    from rich.padding import Padding
+    from rich.text import Text
+
+    shown = columns_shown(grid, room)
+    for number, row in enumerate(grid.rows):
+        if number:
+            console.print()
+        indent = 0
+        for index in shown:
+            value = printable(row[index]).strip(" ")
+            if not value:
+                continue
+            header = " ".join(grid.columns[index].header.split())
+            line = seamed(f"{header}: {value}" if header else value, room - indent)
+            console.print(Padding(Text(line, overflow="fold"), (0, 0, 0, indent)))
+            indent = STEP
 
 
 def _table(grid: Grid, room: int) -> RenderableType:
@@ -102,7 +147,8 @@ def _table(grid: Grid, room: int) -> RenderableType:
         header_style="",
     )
     shown = columns_shown(grid, room)
-    for index, width in zip(shown, _widths(grid, shown, room), strict=True):
+    widths = dict(zip(shown, _widths(grid, shown, room), strict=True))
+    for index, width in widths.items():
         column = grid.columns[index]
         table.add_column(
             Text(_header(column, room)),
@@ -116,7 +162,8 @@ def _table(grid: Grid, room: int) -> RenderableType:
         for index in shown:
             text = printable(row[index])
             indent = len(text) - len(text.lstrip(" "))
-            cell = Text(text.lstrip(" "), overflow="fold")
+            folded = seamed(text.lstrip(" "), widths[index] - indent)
+            cell = Text(folded, overflow="fold")
             cells.append(Padding(cell, (0, 0, 0, indent)) if indent else cell)
         table.add_row(*cells)
     return table
@@ -181,6 +228,33 @@ def _least(grid: Grid, index: int, room: int) -> int:
     if not column.keep:
         longest = min(longest, LONGEST_WORD)
     return max(longest, *(cell_len(h) for h in _header(column, room).split("\n")))
+
+
+def seamed(text: str, width: int) -> str:
+    r"""Return a text whose words longer than a width are broken behind a seam.
+
+    Examples
+    --------
+    >>> seamed("candidate[1].concentration_mmol_l", 24).split("\n")
+    ['candidate[1].', 'concentration_mmol_l']
+    >>> seamed("a hydrochloride", 9)
+    'a hydrochloride'
+    """
+    words = text.split(" ")
+    if width < 1 or all(len(word) <= width for word in words):
+        return text
+    return " ".join(_broken(word, width) for word in words)
+
+
+def _broken(word: str, width: int) -> str:
+    pieces: list[str] = []
+    while len(word) > width:
+        cut = max((word.rfind(seam, 0, width) for seam in SEAMS), default=-1) + 1
+        if cut < 2:
+            break
+        pieces.append(word[:cut])
+        word = word[cut:]
+    return "\n".join([*pieces, word])
 
 
 def wrapped(text: str, width: int) -> list[str]:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any
 
+from formbuf.advice.wording import bare_standing
 from formbuf.output.figures import decimals, plainly, significant
 from formbuf.output.page import Column, Grid, Items, number
 
@@ -18,10 +19,13 @@ CAUTION = (
     "decide."
 )
 
+#: Where the key itself would not be said so.
+CRITERION_NAMES = {"frozen_drift": "freezing drift"}
+
 
 def criterion_name(key: str) -> str:
-    """Return the name of a criterion as people say it."""
-    return key.replace("_", " ")
+    """Return the name of a criterion as people say it, the report too."""
+    return CRITERION_NAMES.get(key, key.replace("_", " "))
 
 
 def title_of(brief: ProductBrief) -> str:
@@ -37,7 +41,13 @@ def title_of(brief: ProductBrief) -> str:
 
 
 def standing_words(candidate: Candidate) -> str:
-    """Return the standing of a candidate, with its place where it has one."""
+    """Return the standing of a candidate, with its place where it has one.
+
+    The product without a buffer stays in view whatever it carries; here it is said
+    whether that is enough.
+    """
+    if candidate.system.id == "none" and candidate.standing == "viable":
+        return bare_standing(candidate.carried_share)
     if candidate.rank is None:
         return candidate.standing
     return f"{candidate.standing}, place {candidate.rank}"

@@ -20,6 +20,12 @@ from formbuf.product.recipe import Background
 
 #: Name of the drug among the components of a mixture.
 DRUG = "drug"
+#: What a buffer of usual strength, with the counter-ions of a protein, adds to the ionic
+#: strength, and its osmoles where a salt fills up to a target (judgement).
+BUFFER_IONIC_STRENGTH_MOL_KG = 0.02
+BUFFER_MOSM_KG = 40.0
+#: Osmoles per particle of a salt that fills.
+SALT_OSMOTIC_COEFFICIENT = 0.92
 
 
 def drug_extra(library: Library, brief: ProductBrief) -> Extra | None:
@@ -42,7 +48,8 @@ def drug_extra(library: Library, brief: ProductBrief) -> Extra | None:
     """
     drug = brief.drug
     mass, amount = drug.concentration_mg_ml, drug.concentration_mmol_l
-    ladder = macro_ladder(library, drug, name=DRUG)
+    ionic = nominal_ionic_strength_mol_kg(library, brief)
+    ladder = macro_ladder(library, drug, name=DRUG, ionic_strength_mol_kg=ionic)
     if not mass and not amount and ladder is None:
         return None
     volumes = library.partial_volumes
@@ -74,6 +81,58 @@ def drug_extra(library: Library, brief: ProductBrief) -> Extra | None:
     if ladder is None and drug.counter_ion and amount:
         particles = amount * (1.0 + drug.counter_ion_per_mole)
     return Extra(DRUG, ladder, particles, mass or 0.0, volume.value, ions)
+
+
+def nominal_ionic_strength_mol_kg(library: Library, brief: ProductBrief) -> float:
+    """Return the ionic strength at which the charges of a protein act on each other.
+
+    One figure for all candidates of a product: the strong ions of excipients, of the
+    drug's named counter-ion and of a salt that fills to the osmolality target, with
+    0.02 mol/kg for the buffer. A strong ion that weak acids or bases balance counts
+    with a singly charged partner. Amounts per litre are taken as per kilogram of
+    water.
+
+    Parameters
+    ----------
+    library : Library
+    brief : ProductBrief
+
+    Returns
+    -------
+    float
+        [mol/kg]
+    """
+    ionic, osmoles = BUFFER_IONIC_STRENGTH_MOL_KG, BUFFER_MOSM_KG
+    for excipient in brief.excipient:
+        own, particles = _of_salt(library, excipient.material)
+        ionic += own * excipient.mmol_l / 1000.0
+        osmoles += particles * excipient.mmol_l
+    drug = brief.drug
+    if drug.counter_ion is not None and drug.concentration_mmol_l:
+        amount = drug.concentration_mmol_l * drug.counter_ion_per_mole
+        ion = library.ions.get(drug.counter_ion)
+        ionic += 0.5 * (ion.charge**2 if ion else 1) * amount / 1000.0
+        osmoles += amount
+    agent, target = brief.tonicity.agent, brief.tonicity.target_mosm_kg
+    if brief.tonicity.fill and agent is not None and target is not None:
+        own, particles = _of_salt(library, agent)
+        if own > 0.0:
+            room = max(target - osmoles, 0.0) / SALT_OSMOTIC_COEFFICIENT
+            ionic += own * room / particles / 1000.0
+    return ionic
+
+
+def _of_salt(library: Library, material: str) -> tuple[float, float]:
+    """Ionic strength and particles that one mole of a material brings."""
+    contents = library.find_material(material).contents
+    charges = [
+        (library.ions[name].charge, count)
+        for name, count in contents.items()
+        if name in library.ions
+    ]
+    squares = sum(z * z * count for z, count in charges)
+    left = abs(sum(z * count for z, count in charges))
+    return 0.5 * (squares + left), sum(contents.values())
 
 
 def drug_capacity_mmol_l_ph(library: Library, brief: ProductBrief) -> float | None:

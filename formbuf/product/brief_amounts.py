@@ -77,7 +77,7 @@ def complete_drug(filler: Filler) -> DrugInfo:
         isoelectric_point=drug.isoelectric_point,
         counter_ion=drug.counter_ion,
         counter_ion_per_mole=per_mole,
-        groups=drug.groups,
+        groups=drug.groups or (("none",) if "groups" in drug.model_fields_set else ()),
         pka=tuple(
             DrugStep(step.pka, step.acid_charge, step.dh_kj_mol, step.dcp_j_mol_k)
             for step in steps

@@ -16,6 +16,7 @@ from formbuf.product.brief_messages import Fault, raise_faults, suggest
 from formbuf.product.brief_model import Brief
 from formbuf.product.brief_origin import Location
 from formbuf.product.brief_overlay import lay_over
+from formbuf.product.entry_checks import entry_faults
 from formbuf.product.vocabulary import (
     ANCHORED_CRITERIA,
     CRITERIA,
@@ -48,6 +49,7 @@ def check_against_library(brief: Brief, library: Library) -> None:
         *_material_faults(brief, wide),
         *_candidate_faults(brief, wide),
         *_other_faults(brief, wide),
+        *entry_faults(brief, wide),
     ]
     raise_faults(brief.origin, faults)
 
@@ -107,7 +109,7 @@ _TABLES = {
     "species": "species",
     "system": "systems",
     "species or system": "systems",
-    "species, system or ion": "systems",
+    "species, system, ion or material": "systems",
     "ion or species": "species",
     "material": "materials",
     "component": "species",
@@ -138,10 +140,11 @@ def _own_row_faults(brief: Brief, library: Library) -> Iterator[Fault]:
 def _list_faults(brief: Brief, library: Library) -> Iterator[Fault]:
     """Yield unknown entries of ``exclude`` and ``require``."""
     required = {*library.species, *library.systems}
-    excluded = {*required, *library.ions}
+    excluded = {*required, *library.ions, *library.neutrals, *library.materials}
     for index, name in enumerate(brief.exclude):
         if name not in excluded:
-            yield _unknown(("exclude", index), "species, system or ion", name, excluded)
+            kind = "species, system, ion or material"
+            yield _unknown(("exclude", index), kind, name, excluded)
     for index, name in enumerate(brief.require):
         if name in STRONG_ELECTROLYTES:
             what = STRONG_IS_NO_BUFFER

@@ -38,6 +38,15 @@ from formbuf.product.product_parts import (
 )
 from formbuf.product.vocabulary import ContainerType, Exposure
 
+#: What the usual volume of a route is; the largest makes amounts per dose an upper end.
+_VOLUME_REASONS = {
+    "typical": "typical volume of the route",
+    "largest": (
+        "largest usual volume of the route, conservative: amounts per dose are an "
+        "upper end until the dose is stated"
+    ),
+}
+
 
 @dataclass(frozen=True, slots=True)
 class Completed:
@@ -198,7 +207,9 @@ def _dose(filler: Filler) -> DoseInfo:
     limits = filler.library.route_limits.get(filler.brief.product.route)
     if volume is None and limits is not None and limits.usual_volume_ml is not None:
         volume = limits.usual_volume_ml
-        reason = "usual volume of the route"
+        reason = _VOLUME_REASONS.get(
+            limits.usual_volume_is, "usual volume of the route"
+        )
         filler.assume(
             "dose.volume_ml", volume, "mL", limits.basis, reason, limits.source
         )
@@ -244,6 +255,8 @@ def _container(filler: Filler) -> ContainerInfo:
     if fill is None:
         fill = filler.volume_ml
         reason = "one dose in each container"
+        if filler.brief.dose.volume_ml is None and is_glass:
+            reason += "; in a smaller fill each litre meets more glass and its alkali"
         filler.assume("container.fill_volume_ml", fill, "mL", "judgement", reason)
     counts = container.count_alkali
     if counts is None:

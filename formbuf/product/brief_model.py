@@ -283,7 +283,7 @@ class Brief(Table):
     exclude: tuple[Id, ...] = Field(
         default=(),
         max_length=60,
-        description="Species, systems or ions never to propose",
+        description="Species, systems, ions or materials never to use",
     )
     require: tuple[SystemName, ...] = Field(
         default=(),
@@ -319,7 +319,9 @@ class Brief(Table):
         for index, name in enumerate(self.exclude):
             if name == "none":
                 what = "cannot be excluded: the product without buffer is always shown"
-                found.append((("exclude", index), what, "species, systems or ions"))
+                found.append(
+                    (("exclude", index), what, "species, systems, ions or materials")
+                )
             elif name in self.require:
                 found.append((("exclude", index), "is also required", "one of the two"))
         for index, entry in enumerate(self.storage):

@@ -71,11 +71,12 @@ def _drug_notices(brief: ProductBrief, library: Library) -> Iterator[str]:
 
 def _charge_notices(brief: ProductBrief, library: Library) -> tuple[str, ...]:
     # read only where needed: reading a brief does without the arrays of the chemistry
-    from formbuf.product.background import drug_extra
+    from formbuf.product.background import drug_extra, nominal_ionic_strength_mol_kg
     from formbuf.product.drug_charge import charge_notes
 
     extra = drug_extra(library, brief)
-    return charge_notes(brief.drug, extra.ions_mmol_l if extra is not None else {})
+    ions = extra.ions_mmol_l if extra is not None else {}
+    return charge_notes(brief.drug, ions, nominal_ionic_strength_mol_kg(library, brief))
 
 
 def _storage_notices(brief: ProductBrief) -> Iterator[str]:
@@ -88,6 +89,11 @@ def _storage_notices(brief: ProductBrief) -> Iterator[str]:
 
 
 def _overlay_notices(library: Library) -> Iterator[str]:
+    if library.overlay is not None:
+        # read only where needed: it brings the descriptions of all tables
+        from formbuf.product.overlay_changes import overlay_notice
+
+        yield overlay_notice(library)
     own = [
         row.id
         for table in (library.species, library.materials, library.systems)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from formbuf.product.brief_cases import Case
 from formbuf.product.brief_filler import Filler
+from formbuf.product.brief_messages import Fault, raise_faults
 from formbuf.product.brief_storage import is_surely_frozen
 from formbuf.product.product_parts import ExcipientInfo, StorageInfo, TonicityInfo
 from formbuf.product.vocabulary import AMORPHOUS_SUGARS, is_biologic
@@ -37,6 +38,11 @@ def complete_tonicity(
     low = route_low if low is None else low
     high = route_high if high is None else high
     fill = stated.fill
+    wants = fill is None and target is not None and stated.agent is None
+    if wants and _free_agent(filler) is None:
+        fill = False
+        reason = "the brief excludes every customary agent: state tonicity.agent"
+        filler.assume("tonicity.fill", fill, "", "judgement", reason)
     if fill is None:
         fill = target is not None and bool(filler.take("tonicity.fill"))
     agent = _agent(filler) if fill or stated.agent is not None else None
@@ -67,17 +73,42 @@ def _target(filler: Filler, low: float | None, high: float | None) -> float:
 
 
 def _agent(filler: Filler) -> str:
-    """Return the stated agent, or the first default that nothing excludes."""
-    stated, library = filler.brief.tonicity.agent, filler.library
+    """Return the stated agent, or the first default that nothing excludes.
+
+    What was passed over is said in the assumption.
+
+    Raises
+    ------
+    InputError
+        The brief asks for a fill and excludes every default.
+    """
+    stated = filler.brief.tonicity.agent
     if stated is not None:
-        return library.find_material(stated).id
-    excluded = set(filler.brief.exclude)
+        return filler.library.find_material(stated).id
+    key = "tonicity.agent"
+    usual, free = filler.case(key), _free_agent(filler)
+    if free is None:
+        what = "asks for a fill, yet the brief excludes every customary agent"
+        fault = Fault(("tonicity", "fill"), what, "an agent stated beside it", True)
+        raise_faults(filler.brief.origin, [fault])
+        return ""
+    reason = free.reason
+    if free is not usual:
+        names = ", ".join(sorted(_barred(filler, usual)))
+        reason = f"instead of {usual.value}, since the brief excludes {names}"
+    filler.assume(key, free.value, free.unit, free.basis, reason, free.source)
+    return str(free.value)
 
-    def is_free(case: Case) -> bool:
-        contents = library.materials[str(case.value)].contents
-        return not excluded & set(contents)
 
-    return str(filler.take("tonicity.agent", is_free))
+def _free_agent(filler: Filler) -> Case | None:
+    """Return the first default agent that the brief does not exclude."""
+    return filler.find("tonicity.agent", lambda case: not _barred(filler, case))
+
+
+def _barred(filler: Filler, case: Case) -> set[str]:
+    """Return what the brief excludes of a default agent, itself or what it holds."""
+    material = filler.library.materials[str(case.value)]
+    return set(filler.brief.exclude) & {material.id, *material.contents}
 
 
 def _amorphous_sugar(
@@ -94,6 +125,7 @@ def _amorphous_sugar(
     )
     has_agent = filler.brief.tonicity.agent is not None
     hardened = filler.form != "liquid" or any(map(is_surely_frozen, storage))
-    if stated or has_agent or not hardened or not is_biologic(filler.kind):
+    is_barred = set(filler.brief.exclude) >= AMORPHOUS_SUGARS
+    if stated or has_agent or not hardened or not is_biologic(filler.kind) or is_barred:
         return stated, False
     return float(filler.take("tonicity.amorphous_sugar_percent_w_v")), True

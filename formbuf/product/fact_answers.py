@@ -93,6 +93,11 @@ def _value(fact: FactDefinition, answer: object) -> FactValue | None:
     return frozenset(names) if set(names) <= set(fact.choices) else None
 
 
+def fits(fact: FactDefinition, answer: object) -> bool:
+    """Whether an answer can be the value of a fact, or says that it is not known."""
+    return answer == UNKNOWN or _value(fact, answer) is not None
+
+
 def allowed(fact: FactDefinition) -> str:
     """Say which answers a fact takes."""
     if fact.kind == "yes_no":

@@ -173,13 +173,14 @@ def choose_brine(
     )
     phosphate = ladders.pop(_BRINE_LADDER, 0.0)
     ions = {i.name: i.mol_kg for i in contents.ions}
-    others = sum(ladders.values()) + sum(
-        x for name, x in ions.items() if name not in _BRINE_IONS
-    )
+    foreign = ladders | {k: x for k, x in ions.items() if k not in _BRINE_IONS}
+    others = sum(foreign.values())
     sodium, potassium = ions.get("sodium", 0.0), ions.get("potassium", 0.0)
     if phosphate == 0.0 or others > _MINOR_SHARE * phosphate:
         plain = replace(EXTENDED_DEBYE_HUCKEL, watched=data.watched)
-        return plain, None, (WATCHED_NOTE,)
+        if phosphate == 0.0:
+            return plain, None, (WATCHED_NOTE,)
+        return plain, None, (WATCHED_NOTE, _why_not_brine(foreign, phosphate))
     label = "sodium" if sodium >= potassium else "potassium"
     brine, notes = data.brines[label], []
     if min(sodium, potassium) > _MIXED_SHARE * max(sodium, potassium):
@@ -193,3 +194,14 @@ def choose_brine(
     if any(n.mol_kg > 0.0 for n in contents.neutrals):
         notes.append("sugars and polyols act on the water only, not on single ions")
     return brine, label, tuple(notes)
+
+
+def _why_not_brine(foreign: Mapping[str, float], phosphate: float) -> str:
+    """Say why a phosphate buffer is not followed with its brine model."""
+    most = max(foreign, key=lambda name: foreign[name])
+    share = sum(foreign.values()) / phosphate
+    return (
+        "the brine model of phosphate, which lets its salts crystallise, is left out: "
+        f"charged solutes without parameters, most of all {most.replace('_', ' ')}, "
+        f"come to {100.0 * share:.0f} % of the phosphate, allowed {100.0 * _MINOR_SHARE:.0f} %"
+    )

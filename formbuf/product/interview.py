@@ -20,6 +20,8 @@ from formbuf.product.interview_readers import Reader, Value
 Answers: TypeAlias = Mapping[str, Value]
 Put: TypeAlias = Callable[[dict[str, Any], Value], None]
 
+#: Held with the drug, not among the facts.
+GROUPS = "drug.groups"
 #: What a person types who does not know.
 UNKNOWN = frozenset({"", "unknown", "u", "don't know", "dont know", "not known", "-"})
 
@@ -217,12 +219,13 @@ def fact_question(
         "choice": readers.one_of(fact.choices),
         "set": readers.some_of(fact.choices),
     }
+    held_in = fact.held_in if fact.held_in == GROUPS else f"facts.{name}"
     explain = (
         f"{ways[fact.kind]} A rule cannot be judged without it, and it could change "
-        "the order of the candidates. It is kept in the brief under [facts]."
+        f"the order of the candidates. It is kept in the brief as {held_in}."
     )
     return Question(
-        f"facts.{name}",
+        held_in,
         fact.question,
         explain,
         reading[fact.kind],

@@ -118,8 +118,9 @@ def _ph_and_storage() -> list[Question]:
         Question(
             "storage.temperature_c",
             "At which temperatures is it stored, C?",
-            "One or more numbers, for example 5 or -40 5. The pH of amine buffers "
-            "moves with temperature, and below the first ice the salts concentrate.",
+            "One or more numbers or a range, for example 5, 2-8, or -40 5; for room "
+            "temperature say 25. The pH of amine buffers moves with temperature, and "
+            "below the first ice the salts concentrate.",
             readers.numbers,
             _storage,
             open_line=None,
@@ -235,7 +236,7 @@ def _drug() -> list[Question]:
         ),
         Question(
             "drug.pka",
-            "Which pK has the drug?",
+            "What are the pK values of the drug?",
             "Each group with its kind: acid 4.3 for a group that is neutral when "
             "protonated, base 9.1 for one that is charged when protonated; several "
             "separated by commas. It decides whether the drug needs a buffer at all.",
@@ -280,7 +281,8 @@ def _rest(library: Library) -> list[Question]:
             "What fills the osmolality up to that of the body?",
             "A material, for example sodium_chloride, sucrose, trehalose, mannitol, "
             "sorbitol, glycerol or glucose; what the buffer and the drug leave is "
-            "filled with it. Without an answer nothing is added.",
+            "filled with it. Without an answer what is usual for such products is taken, "
+            "mostly sodium chloride or a sugar.",
             readers.plain,
             None,
             tonic,

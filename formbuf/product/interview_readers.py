@@ -20,6 +20,8 @@ YES_NO: Mapping[str, bool] = {
     "n": False,
     "false": False,
 }
+#: How people say that none of a list applies.
+NOTHING = frozenset({"none", "no", "nothing", "no one", "0"})
 #: Units of an excipient as people write them, and the key of the brief.
 AMOUNT_UNITS: Mapping[str, str] = {
     "mmol/l": "mmol_l",
@@ -30,6 +32,8 @@ AMOUNT_UNITS: Mapping[str, str] = {
     "%w/v": "percent_w_v",
     "percent": "percent_w_v",
 }
+#: A dash between two numbers, as in 2-8; before a number alone it is a sign.
+_RANGE = re.compile(r"(?<=\d)(?:[-\u2013]|\s[-\u2013]\s)(?=\d)|\.\.")
 _NUMBER = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)")
 _EXCIPIENT = re.compile(r"(?P<name>.+?)[\s=]+(?P<amount>[\d.]+)\s*(?P<unit>[^\d.]+)")
 _PKA = re.compile(r"(?P<kind>acid|base)\s*[:=]?\s*(?P<pka>[+-]?[\d.]+)", re.IGNORECASE)
@@ -84,7 +88,7 @@ def some_of(choices: Sequence[str]) -> Reader:
     """Return a reader of several names out of a list, or ``none``."""
 
     def read(text: str) -> list[str]:
-        if text.strip().casefold() == "none":
+        if text.strip().casefold() in NOTHING:
             return ["none"]
         parts = [part for part in re.split(r"[,;]", text) if part.strip()]
         return list(dict.fromkeys(_choice(part, choices) for part in parts))
@@ -106,24 +110,29 @@ def _choice(text: str, choices: Sequence[str]) -> str:
         return begun[0]
     near = begun or nearest(name, choices, 2)
     hint = f"Did you mean {' or '.join(near)}?" if near else ""
-    allowed = "a name or its number in the list"
+    allowed = f"a name of the list or its number, 1 to {len(choices)}"
     raise fault(f"{text.strip()!r} is not in the list", allowed, hint)
 
 
 def numbers(text: str) -> list[float]:
-    """Return numbers separated by blanks or semicolons, each once."""
-    parts = re.split(r"[;\s]+|,\s+", text.strip())
+    """Return numbers separated by blanks or semicolons, each once; 2-8 is two."""
+    parts = re.split(r"[;\s]+|,\s+", _RANGE.sub(" ", text.strip()))
     kept = [
         part for part in parts if part and part.casefold() not in ("c", "and", "to")
     ]
+    allowed = "numbers separated by blanks, as 5 25, or a range, as 2-8"
     if not kept:
-        raise fault("there is no number", "numbers separated by blanks")
+        raise fault("there is no number", allowed)
+    for part in kept:
+        if not _NUMBER.fullmatch(part):
+            hint = "Decimals have a point: 6.5, not 6,5." if "," in part else ""
+            raise fault(f"{part!r} is no number", allowed, hint)
     return list(dict.fromkeys(number(part) for part in kept))
 
 
 def pair(text: str) -> tuple[float, float]:
     """Return a lower and an upper number."""
-    found = numbers(text.replace(" - ", " ").replace("..", " "))
+    found = numbers(text)
     if len(found) != 2 or found[0] >= found[1]:
         raise fault(f"{text.strip()!r} is no window", "two numbers, the lower first")
     return found[0], found[1]

@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from formbuf.chemistry.equilibrium import Solution
 from formbuf.chemistry.titration import STRONG_ACID, STRONG_BASE
 from formbuf.product.composition import Mixture
 from formbuf.product.product_brief import ProductBrief
@@ -52,3 +55,42 @@ def titratable_acidity_mmol_l(
     amount = np.where(np.asarray(ph) < PHYSIOLOGICAL_PH, base, -acid)
     result: Array = 1000.0 * amount * whole.water_kg_l
     return result
+
+
+def acidities_mmol_l(
+    whole: Mixture,
+    temperature_c: float,
+    solution: Solution,
+    own_mmol_l: Mapping[str, float],
+) -> tuple[float, float]:
+    """Strong base that brings a product to pH 7.4, and the buffer's own part of it.
+
+    Parameters
+    ----------
+    whole : Mixture
+        A single state.
+    temperature_c : float
+        Temperature [C].
+    solution : Solution
+        The product at that temperature.
+    own_mmol_l : mapping of component to float
+        Of each component, what the buffer brings [mmol/L]. Of one that an excipient
+        brings too it has its share.
+
+    Returns
+    -------
+    (whole_mmol_l, own_mmol_l)
+        Negative: strong acid. The own part is what the charge of the buffer's species
+        changes by on the way; water, drug and excipients take up the rest.
+    """
+    acid = float(solution.ph) < PHYSIOLOGICAL_PH
+    titrant = STRONG_BASE if acid else STRONG_ACID
+    reached = whole.titrate(temperature_c, PHYSIOLOGICAL_PH, titrant)
+    change = np.asarray(solution.charge_mol_kg) - reached.charge_mol_kg
+    own = 0.0
+    for component, mmol_l in own_mmol_l.items():
+        k = whole.index(component)
+        if k >= 0 and whole.totals_mol_kg[k] > 0.0:
+            own += float(change[k] / whole.totals_mol_kg[k]) * mmol_l
+    amount = 1000.0 * float(reached.amount_mol_kg) * float(whole.water_kg_l)
+    return (amount if acid else -amount), own

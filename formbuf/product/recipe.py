@@ -92,6 +92,8 @@ def make(
     temperature_c: float,
     background: Background,
     law: OsmoticLaw,
+    *,
+    fill_mmol_l: ArrayLike | None = None,
 ) -> Recipe:
     """Make a system to a pH in a product, at one or many concentrations.
 
@@ -108,6 +110,8 @@ def make(
         Temperature at which pH is measured [C].
     background : Background
     law : OsmoticLaw
+    fill_mmol_l : array_like, shape (...), optional
+        Tonicity agent to add [mmol/L]; found from the osmolality target if absent.
 
     Returns
     -------
@@ -122,12 +126,14 @@ def make(
         np.asarray(concentration_mmol_l, dtype=float),
         np.asarray(target_ph, dtype=float),
     )
-    fill: Array = np.zeros(c.shape)
+    given = 0.0 if fill_mmol_l is None else fill_mmol_l
+    fill: Array = np.broadcast_to(np.asarray(given, dtype=float), c.shape)
     ways = sorted(pieces(library, system), key=lambda piece: np.isinf(piece.limit))
     buffer, mixed = _titrated(
         library, system, ways, c, ph, temperature_c, background, fill
     )
-    if background.agent is None or background.target_mosm_kg is None:
+    target = background.target_mosm_kg
+    if background.agent is None or target is None or fill_mmol_l is not None:
         return Recipe(system.id, c, buffer, fill, mixed, ph)
     slope = np.full(
         c.shape, _fill_slope(library.find_material(background.agent), library)
@@ -136,7 +142,7 @@ def make(
     for _ in range(FILL_CAP):
         solution = mixed.solve(temperature_c)
         osmol = mixed.osmolality(temperature_c, solution, law).osmolality_mosm_kg
-        gap = background.target_mosm_kg - osmol
+        gap = target - osmol
         molal = fill / mixed.water_kg_l
         if before is not None:
             slope = _secant(slope, molal - before[0], osmol - before[1])
@@ -162,7 +168,7 @@ def make(
     else:
         msg = (
             f"{system.id}: the tonicity agent {background.agent} did not settle at "
-            f"{background.target_mosm_kg:g} mosmol/kg within {FILL_CAP} rounds"
+            f"{target:g} mosmol/kg within {FILL_CAP} rounds"
         )
         raise InputError(msg, hint="choose another agent or target")
     return Recipe(system.id, c, buffer, fill, mixed, ph)

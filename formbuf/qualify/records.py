@@ -240,7 +240,10 @@ class Qualification:
         return sum(entry.verdict == verdict for entry in self.groups)
 
     def __repr__(self) -> str:
-        said = "passed" if self.passed else f"{len(self.failed)} groups failed"
+        failed = len(self.failed)
+        said = (
+            f"{failed} group{'' if failed == 1 else 's'} failed" if failed else "passed"
+        )
         return f"<Qualification: {len(self.groups)} groups, {self.cases} cases, {said}>"
 
     @property

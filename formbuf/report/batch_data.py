@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from typing import Any
 
 from formbuf.advice.results import Candidate, Shortlist
 from formbuf.bench.batch_sheet import batch_sheet
-from formbuf.bench.setup import bench_from_brief
+from formbuf.bench.setup import bench_from_brief, bench_from_formula
 from formbuf.errors import ConvergenceError, InputError
 from formbuf.output.batch_sheet_page import sheet_dict
 from formbuf.output.bench_words import bench_dict
@@ -29,18 +29,36 @@ def batch_data(result: Shortlist, shown: Sequence[Candidate]) -> dict[str, Any] 
     Returns
     -------
     dict or None
-        None where there is no finalist, or its formula is a list of materials.
+        None where there is no finalist, or nothing to make it of is known.
     """
-    if not shown or not _has_materials(shown[0]):
+    if not shown:
         return None
     lead = shown[0]
+    given = _given(result, lead)
+    if given is None and not _has_materials(lead):
+        return None
     completed = Completed(result.brief, result.assumptions, (), result.library)
+    made = lead.system, lead.concentration_mmol_l
     try:
-        bench = bench_from_brief(completed, lead.system, lead.concentration_mmol_l)
+        bench = (
+            bench_from_brief(completed, *made)
+            if given is None
+            else bench_from_formula(completed, *made, given)
+        )
         sheet = batch_sheet(bench, volume_l=BATCH_L)
     except (InputError, ConvergenceError):
         return None
     return {"candidate": lead.key, "inputs": bench_dict(bench), **sheet_dict(sheet)}
+
+
+def _given(result: Shortlist, candidate: Candidate) -> Mapping[str, float] | None:
+    """Return the materials of an own formula that is a list of them."""
+    if not candidate.is_own_formula:
+        return None
+    for own in result.brief.candidate:
+        if own.name == candidate.name and own.materials:
+            return own.materials
+    return None
 
 
 def _has_materials(candidate: Candidate) -> bool:

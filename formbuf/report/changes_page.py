@@ -163,8 +163,8 @@ def _reason(r: Reason) -> str:
     if kind == "screen":
         shown = clean(word(SCREENS, name))
         if r.new:
-            return f"now dropped ({shown}): {_shown(r.new)}"
-        return f"no longer dropped ({shown})"
+            return f"now screened out ({shown}): {_shown(r.new)}"
+        return f"no longer screened out ({shown})"
     if kind == "rule":
         old, new = (_shown(x) if x else "not judged" for x in (r.old, r.new))
         return f"{clean(r.what)}: {old}, now {new}"

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from formbuf.advice.wording import bare_standing
 from formbuf.report.content import Block, Column, Items, Note, Paragraph, Section, Spans
 from formbuf.report.reading import Cursor, link, sentence, spans
 from formbuf.report.story import (
@@ -36,12 +37,12 @@ def candidates(story: Story) -> Section:
         line = spans(
             line,
             _capital(counts, dropped),
-            " dropped by a screen (",
+            " screened out (",
             link("exclusions"),
             "). ",
         )
     else:
-        line = spans(line, "No screen drops any of them. ")
+        line = spans(line, "None of them is screened out. ")
     line = spans(
         line,
         "Systems that differ only in their counter-ion share one place; the best of "
@@ -64,6 +65,12 @@ def _capital(counts: Cursor, dropped: int) -> Spans:
     return found
 
 
+def _standing(c: Cursor) -> str:
+    if is_none(c) and c.text("standing") == "viable":
+        return bare_standing(c.number("carried_share"))
+    return c.text("standing")
+
+
 def _list(story: Story) -> Block:
     rows = []
     for c in story.candidates:
@@ -73,7 +80,7 @@ def _list(story: Story) -> Block:
             (
                 spans("– " if variant else None, named(c)),
                 spans("-") if variant else rank,
-                spans("variant" if variant else c.text("standing")),
+                spans("variant" if variant else _standing(c)),
                 spans("-") if is_none(c) else spans(c.value("required_mmol_l")),
                 spans("-")
                 if is_none(c)
@@ -196,7 +203,7 @@ def _exclusions(story: Story) -> Section:
         (
             table(
                 "t-exclusions",
-                spans("Candidates dropped, with rule, value and source"),
+                spans("Candidates screened out, with rule, value and source"),
                 (
                     Column("Candidate", width=1.5),
                     Column("Screen", width=1.2),
@@ -255,7 +262,7 @@ def _own(c: Cursor) -> Spans:
         made.append(spans("no load is set against it"))
     reasons = c.each("screened_out_by")
     if reasons:
-        made.append(spans("; it is dropped: "))
+        made.append(spans("; it is screened out: "))
         for position, screen in enumerate(reasons):
             made += [spans("; ")] if position else []
             made.append(spans(screen.quote("text")))

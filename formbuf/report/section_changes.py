@@ -141,8 +141,8 @@ def _reason(r: Cursor) -> Spans:
     if kind == "screen":
         shown = word(SCREENS, name)
         if r.get("new"):
-            return spans(f"now dropped ({shown}): ", r.quote("new"))
-        return spans(f"no longer dropped ({shown})")
+            return spans(f"now screened out ({shown}): ", r.quote("new"))
+        return spans(f"no longer screened out ({shown})")
     if kind == "rule":
         return spans(
             r.quote("what"), ": ", _outcome(r, "old"), " → ", _outcome(r, "new")

@@ -16,7 +16,7 @@ def compatibility(story: Story) -> Section:
             spans(
                 "Each rule tests facts of the product and of the candidate. It fires, does "
                 "not fire, or cannot be judged because a fact is missing. An exclusion "
-                "drops a candidate; a warning or a note lowers its compatibility by the "
+                "screens a candidate out; a warning or a note lowers its compatibility by the "
                 "worst finding of all topics. Findings that hold for every candidate rank "
                 "nobody and stand apart. The full log is ",
                 link("rules"),

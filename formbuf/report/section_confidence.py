@@ -129,7 +129,8 @@ def _figure(story: Story, shown: list[Cursor]) -> list[Block]:
             spans("pH of the finalists with central intervals"),
             f"Interval chart of pH, one row for each of {names} and one panel for each "
             "temperature of measurement and storage: thick bars hold half of the draws, "
-            "thin bars ninety-five in a hundred. The window at measurement is shaded.",
+            "thin bars ninety-five in a hundred. The window at measurement is shaded. The "
+            "values of lead and back-up stand in the tables of this section.",
             svg,
             png,
         )

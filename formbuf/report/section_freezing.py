@@ -153,7 +153,8 @@ def _figure(shown: list[Cursor]) -> list[Block]:
             spans("pH of the liquid between the ice crystals, on the bounding paths"),
             f"Line charts of pH against falling temperature, one for each of {names}: the "
             "supersaturated path and, where data allow, the crystallising path. A pale "
-            "line marks the pH as prepared.",
+            "line marks the pH as prepared. The values of lead and back-up stand in the "
+            "tables of this section.",
             svg,
             png,
         )

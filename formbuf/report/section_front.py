@@ -266,18 +266,30 @@ def _nobody(story: Story) -> list[Block]:
         if c is not None
         for screen in c.each("screened_out_by")
     ]
+    bare = next((c for c in story.candidates if c.get("system") == "none"), None)
+    share = bare.number("carried_share") if bare is not None else None
+    stands = (
+        bare is not None
+        and bare.get("standing") in ("viable", "back-up")
+        and (share is None or share >= 1.0)
+    )
+    first = (
+        "No buffer is acceptable; the product without one stays viable."
+        if stands
+        else "No candidate is acceptable."
+    )
     blocks: list[Block] = [
         Paragraph(
             spans(
-                Text("No candidate is acceptable.", strong=True),
+                Text(first, strong=True),
                 " Of ",
                 counted(story.more.at("counts", "judged"), "candidate"),
                 " judged, ",
                 counted(story.more.at("counts", "dropped"), "is", "are"),
-                " dropped by at least one screen (",
+                " screened out (",
                 link("candidates"),
-                "). Without a "
-                "change of the brief or a recorded override there is nothing to design.",
+                "). Without a change of the brief or a recorded override there is no "
+                "buffer to design.",
             )
         )
     ]
@@ -285,8 +297,11 @@ def _nobody(story: Story) -> list[Block]:
         blocks.append(
             table(
                 "t-misses",
-                spans("Candidates that came nearest, and what drops them"),
-                (Column("Candidate", width=2.0), Column("Dropped because", width=5.0)),
+                spans("Candidates that came nearest, and what screens them out"),
+                (
+                    Column("Candidate", width=2.0),
+                    Column("Screened out because", width=5.0),
+                ),
                 rows,
             )
         )

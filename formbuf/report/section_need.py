@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from formbuf.product.product_brief import LARGE_VOLUME_ML
 from formbuf.report.content import (
     Block,
@@ -42,16 +44,18 @@ def _budget(story: Story) -> Block:
     loads = story.root.at("loads")
     rows = [
         (
-            spans(item.quote("name")),
-            spans(item.value("acid_mmol_l", trim=True)),
-            spans(item.value("base_mmol_l", trim=True)),
-            spans(item.quote("reason")),
+            spans("acid and ", base.quote("name"))
+            if both
+            else spans(acid.quote("name")),
+            spans(acid.value("acid_mmol_l", trim=True)),
+            spans(base.value("base_mmol_l", trim=True)),
+            spans(acid.quote("reason")),
             source_cell(
-                item.get("source"),
-                f"{item.text('basis')}{' (default)' if item.get('is_default') else ''}",
+                acid.get("source"),
+                f"{acid.text('basis')}{' (default)' if acid.get('is_default') else ''}",
             ),
         )
-        for item in loads.each("items")
+        for acid, base, both in _told_once(loads.each("items"))
     ]
     rows.append(
         (
@@ -74,6 +78,29 @@ def _budget(story: Story) -> Block:
         ),
         rows,
     )
+
+
+def _told_once(items: Sequence[Cursor]) -> list[tuple[Cursor, Cursor, bool]]:
+    """Return loads for the table: acid and base over shelf life as one row.
+
+    Only where the same note stands behind both; then each cell still shows its own
+    value, the other one being zero.
+    """
+    told: list[tuple[Cursor, Cursor, bool]] = []
+    notes = ("basis", "source", "reason", "is_default")
+    for item in items:
+        last = told[-1][0] if told else None
+        if (
+            last is not None
+            and last.text("name").removeprefix("acid ")
+            == item.text("name").removeprefix("base ")
+            and last.text("name") != item.text("name")
+            and all(last.get(key) == item.get(key) for key in notes)
+        ):
+            told[-1] = (last, item, True)
+        else:
+            told.append((item, item, False))
+    return told
 
 
 def _defaults(story: Story) -> list[Block]:

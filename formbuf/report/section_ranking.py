@@ -233,7 +233,7 @@ def _sensitivity(story: Story) -> Section:
             )
         )
     backup = story.backup
-    who = spans(named(backup)) if backup is not None else spans("the runner-up")
+    who = spans(named(backup)) if backup is not None else spans("the back-up")
     return Section(
         "sensitivity",
         spans("How firm the order is"),

@@ -82,8 +82,8 @@ FILINGS: Mapping[str, str] = {"other": "other"}
 CRITERIA: Mapping[str, str] = {
     "capacity": "capacity",
     "temperature_drift": "temperature drift",
-    "tonicity_share": "share of tonicity",
-    "frozen_drift": "drift on freezing",
+    "tonicity_share": "tonicity share",
+    "frozen_drift": "freezing drift",
     "compatibility": "compatibility",
     "precedent": "precedent",
     "dose_burden": "dose burden",

@@ -22,6 +22,11 @@ from formbuf.report.content import (
 )
 from formbuf.report.write_html import SIGN_HEADS, heading_number
 
+#: Said once, before the first figure.
+WHERE_FIGURES_ARE = (
+    "Figures are drawn in the HTML and Word forms of this report; here each has its "
+    "caption and a description, and the tables beside it hold the values."
+)
 _ALWAYS = re.compile(r"([\\`*\[\]<>&|~$])")
 _EDGE_UNDERSCORE = re.compile(r"(?<![^\W_])_|_(?![^\W_])")
 _OPENING = re.compile(r"^([#+=-]|\d+[.)](?=\s|$))")
@@ -49,6 +54,7 @@ class _Markdown:
 
     def __init__(self, document: Document) -> None:
         self.document = document
+        self.has_told_of_figures = False
 
     def parts(self) -> Iterable[str]:
         d = self.document
@@ -81,6 +87,9 @@ class _Markdown:
         elif isinstance(block, Table):
             yield from self._table(block)
         elif isinstance(block, Figure):
+            if not self.has_told_of_figures:
+                self.has_told_of_figures = True
+                yield escaped(WHERE_FIGURES_ARE)
             yield f"**{self.document.labels[block.id]}.** {self.spans(block.caption)}"
             yield f"> Drawing: {escaped(block.alt)}"
         elif isinstance(block, SignatureTable):

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from hypothesis import given, settings
@@ -28,6 +30,7 @@ PROTEIN = Ladder(
     (0.0,) * 5,
     sites=(Sites(52, 0), Sites(60, 0), Sites(26, 1), Sites(86, 1), Sites(36, 1)),
 )
+WORKED = replace(PROTEIN, work=0.03)
 ACETATE = Ladder("acetate", 0, (4.756,), (-0.41,), (-142.0,))
 POINTS = ([3.0, 4.0, 5.0, 6.0, 7.5, 9.0], [50.0, 30.0, 14.0, 10.0, 2.0, -20.0])
 CURVE = Ladder.of_curve("protein", curve_through(*POINTS))
@@ -58,7 +61,9 @@ def _oracle(
     return ph
 
 
-@pytest.mark.parametrize("ladder", [PROTEIN, CURVE], ids=["sites", "curve"])
+@pytest.mark.parametrize(
+    "ladder", [PROTEIN, WORKED, CURVE], ids=["sites", "work", "curve"]
+)
 @pytest.mark.parametrize("charge", [-0.03, -0.01, 0.0, 0.002, 0.005])
 def test_ph_with_a_macro_ion_by_another_method(ladder: Ladder, charge: float) -> None:
     found = solve((ACETATE, ladder), [0.01, 5e-4], charge, abs(charge), 25.0)
@@ -82,10 +87,11 @@ def test_a_macro_ion_is_one_uncharged_particle_to_the_osmolality() -> None:
     assert float(one.molality_mol_kg) == pytest.approx(5e-4)
 
 
-def test_capacity_is_the_slope_of_the_charge() -> None:
-    solution = solve((PROTEIN,), [5e-4], -0.0159, 0.0159, 25.0)
+@pytest.mark.parametrize("ladder", [PROTEIN, WORKED], ids=["sites", "work"])
+def test_capacity_is_the_slope_of_the_charge(ladder: Ladder) -> None:
+    solution = solve((ladder,), [5e-4], -0.0159, 0.0159, 25.0)
     ph, step = float(solution.ph), 1e-5
-    up, down = (charge_and_variance(PROTEIN, ph + d, 25.0)[0] for d in (step, -step))
+    up, down = (charge_and_variance(ladder, ph + d, 25.0)[0] for d in (step, -step))
 
     own = float(capacity_mol_kg_ph(solution)) - np.log(10.0) * float(
         solution.hydrogen_mol_kg + solution.hydroxide_mol_kg
@@ -143,10 +149,10 @@ def test_cold_raises_the_ph_where_imidazole_titrates() -> None:
     assert float(solution.ph[0] - solution.ph[1]) > 0.2
 
 
-@given(st.floats(3.2, 8.8))
+@given(st.floats(3.2, 8.8), st.sampled_from([CURVE, WORKED]))
 @settings(max_examples=60, deadline=None)
-def test_titration_and_solution_are_inverse(ph: float) -> None:
-    ladders = (ACETATE, CURVE)
+def test_titration_and_solution_are_inverse(ph: float, protein: Ladder) -> None:
+    ladders = (ACETATE, protein)
     found = titrant_for_ph(ladders, [0.01, 5e-4], -0.02, 0.02, 25.0, ph, STRONG_BASE)
     base = float(found.amount_mol_kg)
     back = solve(ladders, [0.01, 5e-4], base - 0.02, abs(base) + 0.02, 25.0)

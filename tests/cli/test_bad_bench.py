@@ -76,8 +76,6 @@ BAD = [
     _sheet("volume_minus", "--volume", "-2", words=("--volume", "value -2 L")),
     _sheet("volume_nan", "--volume", "nan", words=("--volume", "nan")),
     _sheet("volume_text", "--volume", "two", words=("--volume: must be a number",)),
-    _sheet("volume_and_mass", "--mass", "2", words=("--volume or --mass",)),
-    Bad("no_size", ("batch-sheet", *QUICK), ("--volume or --mass",)),
     _sheet(
         "assay_above_100",
         "--assay",
@@ -131,12 +129,6 @@ BAD = [
         hint="mannitol",
     ),
     _sheet("excipient_minus", "--add", "mannitol=-50", words=("--add: mannitol=-50",)),
-    _sheet(
-        "agent_without_target",
-        "--tonicity-agent",
-        "sucrose",
-        words=("--tonicity-agent", "without --osmolality"),
-    ),
     _sheet(
         "agent_over_target",
         "--tonicity-agent",
@@ -208,7 +200,7 @@ BAD = [
     Bad(
         "window_outside",
         ("challenge", *QUICK, "--low", "7.6"),
-        ("--window", "does not hold the target 7.4"),
+        ("--low and --high", "does not hold the target pH 7.4"),
     ),
     Bad(
         "diluent_unknown",
@@ -341,6 +333,42 @@ BAD = [
     ),
 ]
 USAGE = [
+    Bad(
+        "volume_and_mass",
+        (*SHEET, "--mass", "2"),
+        ("--mass is given beside --volume",),
+        code=2,
+    ),
+    Bad(
+        "no_size",
+        ("batch-sheet", *QUICK),
+        ("neither --volume nor --mass is given",),
+        code=2,
+    ),
+    Bad(
+        "agent_without_target",
+        (*SHEET, "--tonicity-agent", "sucrose"),
+        ("--tonicity-agent is given without --osmolality",),
+        code=2,
+    ),
+    Bad(
+        "target_without_agent",
+        ("challenge", *QUICK, "--osmolality", "290"),
+        ("--osmolality is given without --tonicity-agent",),
+        code=2,
+    ),
+    Bad(
+        "nothing_but_a_system",
+        ("batch-sheet", *SYSTEM, "--volume", "1"),
+        ("no brief, and --concentration and --ph are not given",),
+        code=2,
+    ),
+    Bad(
+        "nothing_at_all",
+        ("challenge",),
+        ("no brief, and --system, --concentration and --ph are not given",),
+        code=2,
+    ),
     Bad("no_system", ("batch-sheet", ANTIBODY, "--volume", "1"), ("--system",), code=2),
     Bad(
         "no_ph",
@@ -358,7 +386,7 @@ USAGE = [
     Bad(
         "half_a_protein",
         ("retentate", *QUICK, "--charge", "5"),
-        ("--protein-mg-ml",),
+        ("--protein-mg-ml and --molar-mass are not given",),
         code=2,
     ),
     Bad(

@@ -84,7 +84,7 @@ BAD_LINES = [
         "sodium_phosphate",
     ),
     BadLine("explain_no_brief", ("explain", "no.toml", "none"), 3, ("no such file",)),
-    BadLine("predict_nothing", ("predict",), 2, ("nothing is added",)),
+    BadLine("predict_nothing", ("predict",), 2, ("--add is not given",)),
     BadLine("add_no_amount", ("predict", "--add", "sucrose"), 2, ("has no amount",)),
     BadLine("add_no_name", ("predict", "--add", "=5"), 2, ("has no amount",)),
     BadLine("add_empty", ("predict", "--add", ""), 2, ("has no amount",)),

@@ -1,4 +1,4 @@
-"""``formbuf brief new``: the talk, scripted and on a terminal of its own."""
+"""``formbuf brief new``: the dialogue, scripted and on a terminal of its own."""
 
 from __future__ import annotations
 
@@ -58,15 +58,15 @@ class Played:
         return "\n".join(self.said)
 
 
-def _talk(path: Path, *lines: str) -> Played:
+def _hold(path: Path, *lines: str) -> Played:
     user = Played(*lines)
-    brief_new.talk(library(), path, user.ask, user.said.append)
+    brief_new.hold_interview(library(), path, user.ask, user.said.append)
     return user
 
 
 def test_a_nasal_spray(tmp_path: Path) -> None:
     path = tmp_path / "spray.toml"
-    user = _talk(path, *NASAL, "done", "done")
+    user = _hold(path, *NASAL, "done", "done")
     assert "not in the list" in user.heard
     assert "Decimals have a point" in user.heard
     assert "The route decides" in user.heard
@@ -80,30 +80,31 @@ def test_a_nasal_spray(tmp_path: Path) -> None:
 
 def test_facts_that_could_change_the_order_are_asked_last(tmp_path: Path) -> None:
     path = tmp_path / "spray.toml"
-    user = _talk(path, *NASAL, *[""] * 6, "yes", "1", *[""] * 10)
+    user = _hold(path, *NASAL, *[""] * 6, "ester, 10", "yes", "1", *[""] * 10)
     assert "could change the order" in user.heard
     text = path.read_text("utf-8")
     assert "[facts]" in text
+    assert 'groups = ["ester", "thiol"]' in text.partition("[facts]")[0]
     assert "multidose = true" in text
     assert formbuf("brief", "check", str(path)).code == 0
 
 
 def test_done_needs_route_and_ph(tmp_path: Path) -> None:
     path = tmp_path / "x.toml"
-    user = _talk(path, "done", "", "nasal", "done", "5.5", "done", "done")
+    user = _hold(path, "done", "", "nasal", "done", "5.5", "done", "done")
     assert user.heard.count("needs at least the route and the target pH") == 2
     assert path.exists()
 
 
 def test_back_at_the_first_question(tmp_path: Path) -> None:
-    user = _talk(tmp_path / "x.toml", "back", "", "nasal", "6", "done", "done")
+    user = _hold(tmp_path / "x.toml", "back", "", "nasal", "6", "done", "done")
     assert "This is the first question." in user.heard
 
 
 def test_answers_that_end_early_write_nothing(tmp_path: Path) -> None:
     path = tmp_path / "x.toml"
     with pytest.raises(UsageError, match="answers ended"):
-        _talk(path, "", "nasal", "6")
+        _hold(path, "", "nasal", "6")
     assert not path.exists()
 
 
@@ -126,7 +127,7 @@ def test_a_folder_that_is_not_there_is_told_before_the_first_question(
 
 
 def test_what_an_answer_is_taken_as_is_said(tmp_path: Path) -> None:
-    user = _talk(tmp_path / "x.toml", "", "nose", "6", "1", "done", "done")
+    user = _hold(tmp_path / "x.toml", "", "nose", "6", "1", "done", "done")
     assert "(taken as nasal)" in user.heard
     assert "(taken as liquid)" in user.heard
 

@@ -207,21 +207,26 @@ class Bad:
 
 PHOSPHATE = ("--system", "sodium_phosphate")
 BAD = [
-    Bad("nothing", ("freeze-thaw",), 2, ("--system, --concentration, --ph",)),
+    Bad(
+        "nothing",
+        ("freeze-thaw",),
+        2,
+        ("--system, --concentration and --ph are not given",),
+    ),
     Bad("above_freezing", (*QUICK[:-1], "5"), 3, ("--to: 5 C", "above freezing")),
     Bad("below_data", (*QUICK[:-1], "-60"), 3, ("-60 C is below the data", "-30 to 0")),
     Bad("no_number", (*QUICK[:-1], "nan"), 3, ("--to", "-30 to 0")),
     Bad(
         "no_concentration",
         ("freeze-thaw", *PHOSPHATE, "--ph", "7.4", "--to", "-10"),
-        3,
-        ("--concentration: absent",),
+        2,
+        ("no brief, and --concentration is not given",),
     ),
     Bad(
         "no_ph",
         ("freeze-thaw", *PHOSPHATE, "--concentration", "50"),
-        3,
-        ("--ph: absent",),
+        2,
+        ("no brief, and --ph is not given",),
     ),
     Bad(
         "unknown_system",

@@ -16,8 +16,8 @@ from formbuf.cli import main
 from formbuf.cli.registry import COMMANDS
 from formbuf.library.store import knowledge_root
 
-#: Examples that talk with a person; their talk has its own tests.
-TALKING = ("brief", "new")
+#: Examples that ask a person; the dialogue has its own tests.
+ASKING = ("brief", "new")
 #: Examples that take more than a few seconds.
 LONG = ("--draws 2500", "formbuf scan", "formbuf sensitivity", "formbuf qualify")
 
@@ -43,7 +43,7 @@ def _examples() -> Iterator[Any]:
         text = str(epilog or "").replace("\\\n", " ")
         for line in text.splitlines():
             words = " ".join(line.split())
-            if words.startswith("formbuf ") and words not in seen and path != TALKING:
+            if words.startswith("formbuf ") and words not in seen and path != ASKING:
                 seen.add(words)
                 marks = [pytest.mark.slow] if any(x in words for x in LONG) else []
                 yield pytest.param(words, id=words[:60], marks=marks)

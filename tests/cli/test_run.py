@@ -54,8 +54,8 @@ def test_without_arguments_the_help_is_the_answer() -> None:
     assert "Commands:" in done.err
 
 
-#: Commands that talk with a person; what they write is named as an argument.
-TALKING = [("brief", "new")]
+#: Commands that ask a person; what they write is named as an argument.
+ASKING = [("brief", "new")]
 
 
 def _paths() -> list[tuple[str, ...]]:
@@ -80,9 +80,7 @@ def test_every_command_has_a_help_with_an_example(path: tuple[str, ...]) -> None
     assert all(len(line) <= 80 for line in done.out.splitlines())
 
 
-@pytest.mark.parametrize(
-    "path", [p for p in _paths() if p not in TALKING], ids="-".join
-)
+@pytest.mark.parametrize("path", [p for p in _paths() if p not in ASKING], ids="-".join)
 def test_every_command_writes_to_a_file(path: tuple[str, ...]) -> None:
     assert "-o, --output FILE" in formbuf(*path, "-h").out
 

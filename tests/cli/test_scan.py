@@ -152,7 +152,7 @@ def test_an_axis_that_no_brief_has_is_refused(
 @pytest.mark.parametrize(
     ("args", "code", "text"),
     [
-        ([], 3, "at least one --over"),
+        ([], 2, "--over is not given, allowed at least one"),
         (["--over", "target_ph=5:6"], 3, "is no range"),
         (["--over", "target_ph=6", "--top", "0"], 2, "--top"),
         (["--over", "target_ph=6", "--seed", "1"], 2, "--seed"),

@@ -106,6 +106,7 @@ def test_shortlist_json_keys(antibody: dict[str, Any]) -> None:
     assert list(antibody) == SHORTLIST_KEYS
     assert antibody["schema"] == "formbuf.shortlist/1"
     keys = ["version", "sha256", "overlay", "overlay_sha256", "precedent_file"]
+    keys += ["overlay_changes"]
     assert list(antibody["knowledge"]) == keys
     for candidate in antibody["candidates"]:
         assert list(candidate) == CANDIDATE_KEYS
@@ -280,7 +281,8 @@ def test_no_acceptable_candidate_is_exit_code_1(tmp_path: Path) -> None:
     assert all(c["rank"] is None for c in data["candidates"])
     table = formbuf("shortlist", str(path))
     assert table.code == 1
-    assert "No candidate is acceptable" in table.out
+    assert "No added buffer stays viable" in table.out
+    assert "Every buffer system is screened out" in " ".join(table.out.split())
     assert table.err == ""
 
 

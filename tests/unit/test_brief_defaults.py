@@ -27,6 +27,8 @@ from formbuf.product.brief_filler import Filler
 ROOT = Path(__file__).resolve().parents[2]
 EXAMPLES = sorted((ROOT / "examples").glob("*.toml"))
 HEAD = '[product]\nroute = "subcutaneous"\n[ph]\ntarget = 6.0\n'
+DRIED = HEAD.replace('"\n[ph]', '"\nform = "dried"\n[ph]')
+WITHOUT_SUCROSE = 'exclude = ["sucrose"]\n' + HEAD + '[drug]\nkind = "antibody"\n'
 
 
 @pytest.fixture(scope="module")
@@ -95,6 +97,8 @@ def test_every_default_is_used_by_some_brief(library: Library) -> None:
             patient = {"product": product, "ph": {"target": 6}}
             complete(brief_from_mapping(patient), library)
         _complete('exclude = ["sodium"]\n' + HEAD, library)
+        _complete(WITHOUT_SUCROSE, library)
+        _complete('exclude = ["mannitol"]\n' + DRIED, library)
         _complete(HEAD + '[drug]\ncounter_ion = "chloride"\n', library)
         _complete(
             HEAD + '[[species]]\nid = "a"\nsource = "report"\n'

@@ -91,7 +91,7 @@ def test_the_required_amount_of_a_draw_is_that_of_a_new_sizing(wanted: float) ->
         candidate.system,
         case.brief,
         case.loads,
-        case.sizing_background,
+        case.surroundings,
         case.law,
         case.settings,
     )

@@ -307,7 +307,10 @@ def test_mixed_cations_take_one_set_and_say_so() -> None:
     assert model.parameters == brine("sodium").parameters
     assert model.error_ph == 0.5
     assert any("sodium and potassium together" in note for note in notes)
-    _, none, _ = choose_brine(data(), contents({"phosphate": 0.01, "citrate": 0.01}))
+    _, none, why = choose_brine(data(), contents({"phosphate": 0.01, "citrate": 0.01}))
+    assert any(
+        "citrate, come to 100 % of the phosphate, allowed 10 %" in w for w in why
+    )
     assert none is None
 
 

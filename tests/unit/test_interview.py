@@ -17,7 +17,7 @@ from formbuf.library.rules import load_rulebook
 from formbuf.product import interview_readers as readers
 from formbuf.product.brief import brief_from_mapping, brief_from_text, complete
 from formbuf.product.brief_writer import brief_toml, toml_value
-from formbuf.product.interview import Interview, fact_questions
+from formbuf.product.interview import GROUPS, Interview, fact_questions
 from formbuf.product.interview_questions import questions
 from formbuf.product.vocabulary import DrugKind, Form, Route
 
@@ -173,7 +173,11 @@ def test_facts_come_after_what_they_hang_on() -> None:
 
 def test_every_fact_that_a_brief_holds_can_be_asked() -> None:
     vocabulary = load_rulebook(library()).vocabulary
-    facts = [f for f in vocabulary.values() if f.held_in.startswith("facts.")]
+    facts = [
+        f
+        for f in vocabulary.values()
+        if f.held_in.startswith("facts.") or f.held_in == GROUPS
+    ]
     samples = {"yes_no": "yes", "number": None, "choice": "1", "set": "1, 2"}
     for question, fact in zip(
         (fact_questions([f], vocabulary)[-1] for f in facts), facts, strict=True
@@ -210,6 +214,11 @@ def test_every_question_is_explained_and_worded_as_one() -> None:
         (readers.pair, "5.7 6.3", (5.7, 6.3)),
         (readers.pair, "5.7 - 6.3", (5.7, 6.3)),
         (readers.pair, "5.7 to 6.3", (5.7, 6.3)),
+        (readers.pair, "5.7-6.3", (5.7, 6.3)),
+        (readers.numbers, "2-8", [2.0, 8.0]),
+        (readers.numbers, "2 to 8 C", [2.0, 8.0]),
+        (readers.numbers, "-20-25", [-20.0, 25.0]),
+        (readers.numbers, "-40..-20", [-40.0, -20.0]),
         (readers.yes_no, "Y", True),
         (readers.yes_no, "no", False),
         (readers.one_of(("nasal", "otic")), "2", "otic"),
@@ -218,6 +227,7 @@ def test_every_question_is_explained_and_worded_as_one() -> None:
         (readers.one_of(("nasal", "otic")), "na", "nasal"),
         (readers.some_of(("a", "b", "c")), "1, c", ["a", "c"]),
         (readers.some_of(("a", "b")), "none", ["none"]),
+        (readers.some_of(("a", "b")), "No", ["none"]),
         (readers.names, "citrate, borate  tris", ["citrate", "borate", "tris"]),
         (readers.pka_steps, "acid 4.3", [{"pka": 4.3, "acid_charge": 0}]),
         (readers.pka_steps, "base: 9.1", [{"pka": 9.1, "acid_charge": 1}]),
@@ -254,8 +264,9 @@ def test_answers_are_read(read, text: str, value: object) -> None:
         (readers.pair, "6", "no window"),
         (readers.pair, "7 6", "no window"),
         (readers.numbers, " ; ", "no number"),
+        (readers.numbers, "room temperature", "or a range, as 2-8"),
         (readers.yes_no, "maybe", "neither yes nor no"),
-        (readers.one_of(("nasal",)), "3", "not in the list"),
+        (readers.one_of(("nasal",)), "3", "its number, 1 to 1$"),
         (readers.one_of(("nasal",)), "nasl", "not in the list"),
         (readers.pka_steps, "4.3", "no pK"),
         (readers.pka_steps, " ", "no pK"),

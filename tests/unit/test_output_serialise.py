@@ -84,6 +84,7 @@ def test_header_names_the_knowledge() -> None:
             "overlay": None,
             "overlay_sha256": None,
             "precedent_file": None,
+            "overlay_changes": [],
         },
     }
 

@@ -250,7 +250,7 @@ def test_an_override_is_told_with_reason_name_and_date() -> None:
 def test_an_own_formula_outside_its_window_is_dropped_with_its_ph() -> None:
     blocks = html_blocks(case("override and own formula").html)
     own = next(b for b in blocks if b.startswith("“our buffer”"))
-    assert "it is dropped: as given it reads pH 9." in own
+    assert "it is screened out: as given it reads pH 9." in own
 
 
 def test_default_loads_are_an_open_point_and_a_caution() -> None:

@@ -167,11 +167,17 @@ def test_overridden_warnings_and_notes_step_down():
 @pytest.mark.parametrize(
     ("given", "message"),
     [
-        ([override("R999")], "override[1].rule: 'R999' is no rule or screen"),
-        ([override("R098", reason="   ")], "override[1].reason: empty"),
-        ([override("R098", name=" ")], "override[1].name: empty"),
-        ([override("R098"), override("R098")], "override[2].rule: R098 is overridden"),
-        ([override("R098", system="soda")], "override[1].system: 'soda' is no system"),
+        ([override("R999")], "override[1].rule: is no rule or screen, value 'R999'"),
+        ([override("R098", reason="   ")], "override[1].reason: is empty"),
+        ([override("R098", name=" ")], "override[1].name: is empty"),
+        (
+            [override("R098"), override("R098")],
+            "override[2].rule: is overridden twice, value 'R098'",
+        ),
+        (
+            [override("R098", system="soda")],
+            "override[1].system: is no system, value 'soda'",
+        ),
     ],
 )
 def test_overrides_without_rule_or_reason_are_refused(given, message):

@@ -38,7 +38,7 @@ def sized(case_, system_id):
         system,
         case_.brief,
         case_.loads,
-        case_.sizing_background,
+        case_.surroundings,
         case_.law,
         case_.settings,
     )
@@ -121,6 +121,7 @@ def test_carbon_dioxide_is_an_acid_load_when_open():
     """At the lower limit, pH 7.7, air gives bicarbonate of about 0.3 mmol/L."""
     c = case(
         ph={"target": 8.0, "low": 7.7, "high": 8.3, "release_tolerance": 0.1},
+        storage=[{"temperature_c": 25.0}],
         carbon_dioxide={"exposure": "open"},
     )
     item = next(i for i in c.loads.items if "carbon dioxide" in i.name)
@@ -137,6 +138,7 @@ def test_carbon_dioxide_of_a_closed_headspace_is_an_acid_load():
     """
     c = case(
         ph={"target": 8.0, "low": 7.7, "high": 8.3, "release_tolerance": 0.1},
+        storage=[{"temperature_c": 25.0}],
         carbon_dioxide={
             "exposure": "headspace",
             "headspace_ratio": 0.5,
