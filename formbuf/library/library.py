@@ -139,7 +139,23 @@ class Library:
             names = ", ".join(entry.id for entry in found)
             message = f"{place}{text!r} fits several materials, allowed one of {names}"
             raise InputError(message, hint="Name the material by its id.")
-        names_too = (entry.name for entry in self.materials.values())
+        bringing = [
+            e.id
+            for e in self.materials.values()
+            if wanted in {*e.contents} & {*self.species}
+        ]
+        if bringing:
+            place = f"{where}: " if where else ""
+            message = (
+                f"{place}{text!r} is a species, not a material, allowed one that brings "
+                f"it: {', '.join(bringing)}"
+            )
+            raise InputError(message, hint="Name what is weighed.")
+        names_too = (
+            e.name
+            for e in self.materials.values()
+            if e.name.casefold().replace(" ", "_") not in self.materials
+        )
         known = dict.fromkeys([*self.materials, *names_too])
         raise UnknownNameError("material", text, known, where=where)
 

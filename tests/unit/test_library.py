@@ -197,6 +197,14 @@ def test_ambiguous_material_names_every_candidate(
         assert name in caught.value.message
 
 
+def test_a_species_is_answered_by_the_materials_that_bring_it(
+    library: Library,
+) -> None:
+    with pytest.raises(InputError, match="'Tris' is a species, not a material") as told:
+        library.find_material("Tris", where="--add")
+    assert "tromethamine, tromethamine_acetate" in told.value.message
+
+
 def test_unknown_names_give_the_nearest(library: Library) -> None:
     with pytest.raises(UnknownNameError) as material:
         library.find_material("trehalose_dihydrat")

@@ -19,6 +19,7 @@ from formbuf.library import Library
 from formbuf.library.store import knowledge_root
 from formbuf.output.serialise import header, shortlist_dict
 from formbuf.output.shortlist_page import blocks, open_alike
+from formbuf.output.words import standing_words
 from formbuf.product.brief import brief_from_mapping
 from formbuf.product.overlay_changes import (
     _key_columns,
@@ -372,7 +373,9 @@ def test_a_product_that_stands_without_a_buffer_leads_the_verdict() -> None:
     result = run(drug=drug, exclude=BUFFERS)
     bare = judged(result, "none")
     assert bare.standing in ("viable", "back-up")
-    assert result.verdict.startswith("No added buffer stays viable: the product by itself")
+    assert result.verdict.startswith(
+        "No added buffer stays viable: the product by itself"
+    )
     dropped = [c for c in result.dropped if c.system.id != "none"]
     held = sum("excluded" in {s.id for s in c.dropped_by} for c in dropped)
     assert held == len(dropped) > 5
@@ -383,6 +386,26 @@ def test_a_product_that_stands_without_a_buffer_leads_the_verdict() -> None:
     data = shortlist_dict(result)
     assert data["verdict"] == result.verdict
     assert data["lead"] is None
+
+
+def test_a_product_that_carries_too_little_is_not_called_viable() -> None:
+    drug = {
+        **MOLECULE,
+        "concentration_mg_ml": 0.02,
+        "molar_mass_g_mol": 200.0,
+        "counter_ion": "chloride",
+        "pka": [{"pka": 6.0, "acid_charge": 1}],
+    }
+    result = run(drug=drug, exclude=BUFFERS)
+    bare = judged(result, "none")
+    assert bare.carried_share is not None
+    assert 0.0 < bare.carried_share < 1.0
+    assert result.verdict.startswith("No buffer is acceptable: every buffer system")
+    assert (
+        "Nor is the product enough without one: the product by itself" in result.verdict
+    )
+    assert "viable" not in result.verdict
+    assert standing_words(bare) == "not enough by itself"
 
 
 def test_a_protein_that_cannot_be_judged_without_one_is_not_called_viable() -> None:
