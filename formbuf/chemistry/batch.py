@@ -159,9 +159,9 @@ def prepare(
     _check_amounts("component totals", totals, 0.0)
     _check_amounts("strong-ion charge", charge, -AMOUNT_LIMIT_MOL_KG)
     _check_amounts("strong-ion squared charge", charge2, 0.0)
-    _check_temperature(t)
+    is_even = _check_temperature(t)
     n = int(np.prod(shape, dtype=int))
-    flat_t = t.reshape(1) if t.size == 1 else np.broadcast_to(t, shape).reshape(n)
+    flat_t = t.reshape(-1)[:1] if is_even else np.broadcast_to(t, shape).reshape(n)
     wide = np.broadcast_to(totals, (*shape, len(ladders))).reshape(n, len(ladders))
     shifts = {
         name: _flat_shift(name, values, shape)
@@ -202,14 +202,19 @@ def _check_amounts(label: str, values: Array, low: float) -> None:
         raise InputError(msg)
 
 
-def _check_temperature(t: Array) -> None:
-    if t.size and not (t.min() >= EXTRAPOLATION_LIMIT_C and t.max() <= LIQUID_HIGH_C):
+def _check_temperature(t: Array) -> bool:
+    """Refuse what lies outside; return whether all states have one temperature."""
+    if not t.size:
+        return False
+    low, high = t.min(), t.max()
+    if not (low >= EXTRAPOLATION_LIMIT_C and high <= LIQUID_HIGH_C):
         ok = (t >= EXTRAPOLATION_LIMIT_C) & (t <= LIQUID_HIGH_C)
         msg = (
             f"temperature of {float(t[~ok].flat[0]):g} C: allowed are "
             f"{EXTRAPOLATION_LIMIT_C:g} to {LIQUID_HIGH_C:g}"
         )
         raise InputError(msg)
+    return bool(low == high)
 
 
 def _water(t: Array, model: ActivityModel) -> tuple[Array, Array]:

@@ -8,6 +8,7 @@ and heat capacity of ionization that carry the pK to other temperatures.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -171,10 +172,20 @@ def pk_at(ladder: Ladder, temperature_c: ArrayLike) -> Array:
         pK [-].
     """
     t = np.asarray(temperature_c, dtype=float)
-    dh = np.nan_to_num(np.asarray(ladder.dh_kj_mol, dtype=float), nan=0.0)
-    dcp = np.nan_to_num(np.asarray(ladder.dcp_j_mol_k, dtype=float), nan=0.0)
-    shift = pk_shift(dh, dcp, t[..., np.newaxis])
-    return np.asarray(ladder.pka, dtype=float) + shift
+    pka, dh, dcp = _step_values(ladder)
+    return pka + pk_shift(dh, dcp, t[..., np.newaxis])
+
+
+@lru_cache(maxsize=1024)
+def _step_values(ladder: Ladder) -> tuple[Array, Array, Array]:
+    """Return pK, enthalpy and heat capacity of the steps, zero where unknown."""
+    values = (ladder.pka, ladder.dh_kj_mol, ladder.dcp_j_mol_k)
+    pka, dh, dcp = (np.asarray(x, dtype=float) for x in values)
+    for x in (dh, dcp):
+        x[np.isnan(x)] = 0.0
+    for x in (pka, dh, dcp):
+        x.flags.writeable = False
+    return pka, dh, dcp
 
 
 def pk_slope_per_k(ladder: Ladder, temperature_c: float = 25.0) -> Array:
