@@ -93,12 +93,14 @@ def test_explain_csv_holds_every_leaf() -> None:
     assert {row["key"] for row in rows} >= {"schema", "candidate.system", "verdict"}
 
 
+@pytest.mark.slow
 def test_explain_judges_what_the_brief_does_not_consider() -> None:
     done = formbuf("explain", ANTIBODY, "bis_tris_hydrochloride")
     assert done.code == 0
     assert "judged because it was asked for" in done.out
 
 
+@pytest.mark.slow
 def test_explain_takes_the_formula_of_the_user() -> None:
     data = formbuf("shortlist", ANTIBODY, "--json").data()
     own = next(c for c in data["candidates"] if c["is_own_formula"])

@@ -168,6 +168,7 @@ def test_a_figure_is_written(ending: str, tmp_path: Path) -> None:
     assert done.data()["schema"] == "formbuf.freeze_thaw/1"
 
 
+@pytest.mark.slow
 def test_a_figure_and_a_table_in_files(tmp_path: Path) -> None:
     figure, table = tmp_path / "a.svg", tmp_path / "a.md"
     done = formbuf(*ANTIBODY, "--figure", str(figure), "-o", str(table))
@@ -308,6 +309,7 @@ def test_no_plotting_interface_is_imported() -> None:
     assert done.returncode == 0
 
 
+@pytest.mark.slow
 def test_a_figure_needs_no_plotting_interface(tmp_path: Path) -> None:
     line = [*QUICK, "--figure", str(tmp_path / "a.svg")]
     code = (

@@ -19,7 +19,15 @@ from formbuf.library.store import knowledge_root
 #: Examples that ask a person; the dialogue has its own tests.
 ASKING = ("brief", "new")
 #: Examples that take more than a few seconds.
-LONG = ("--draws 2500", "formbuf scan", "formbuf sensitivity", "formbuf qualify")
+LONG = (
+    "--draws 2500",
+    "formbuf scan",
+    "formbuf sensitivity",
+    "formbuf qualify",
+    "formbuf rationale",
+    "formbuf changes",
+    "--figure",
+)
 
 
 def _commands(

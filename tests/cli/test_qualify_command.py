@@ -13,6 +13,8 @@ from qualify_support import change_one_cell
 from formbuf.qualify import run as qualify_run
 
 pytest.importorskip("docx")
+#: A qualification takes 4 s; the everyday run has that of ``tests/unit/test_qualify.py``.
+pytestmark = pytest.mark.slow
 
 
 @pytest.fixture(scope="module")

@@ -39,7 +39,14 @@ COMMAND_LINES = [
 ]
 
 
-@pytest.mark.parametrize("width", [40, 80, 120])
+@pytest.mark.parametrize(
+    "width",
+    [
+        pytest.param(40, marks=pytest.mark.slow),
+        80,
+        pytest.param(120, marks=pytest.mark.slow),
+    ],
+)
 @pytest.mark.parametrize("line", COMMAND_LINES, ids=" ".join)
 def test_no_line_is_too_long_and_no_pipe_gets_codes(
     line: tuple[str, ...], width: int
@@ -58,6 +65,7 @@ def _broken_words(done: Done, whole: str) -> list[str]:
     return sorted({piece for piece in pieces if piece not in known})
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("line", COMMAND_LINES, ids=" ".join)
 def test_words_stay_whole_on_forty_columns(line: tuple[str, ...]) -> None:
     """Each word that ends a line is a word of the same output in Markdown."""
@@ -66,6 +74,7 @@ def test_words_stay_whole_on_forty_columns(line: tuple[str, ...]) -> None:
     assert _broken_words(formbuf(*line, columns=40), whole) == []
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("line", COMMAND_LINES[:8], ids=" ".join)
 def test_every_column_has_a_header(line: tuple[str, ...]) -> None:
     done = formbuf(*line, "--format", "markdown")
@@ -99,6 +108,7 @@ def test_counts_agree_with_their_nouns(tmp_path: Path) -> None:
     assert "1 point." in scan.err
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("line", COMMAND_LINES[:10], ids=" ".join)
 def test_one_is_never_followed_by_a_plural(line: tuple[str, ...]) -> None:
     """Units and names after a 1 aside, no counted noun is in the plural."""

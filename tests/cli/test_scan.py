@@ -110,6 +110,7 @@ def test_a_scan_has_one_row_per_point_and_place(
         assert float(row["ph"]) == pytest.approx(float(row["target_ph"]), abs=1e-4)
 
 
+@pytest.mark.slow
 def test_a_point_of_a_scan_is_the_shortlist_of_its_brief(
     brief: str, capsys: pytest.CaptureFixture[str]
 ) -> None:
@@ -211,6 +212,7 @@ def test_a_scan_goes_on_where_it_stopped(
     assert ("Going on" in captured.err) == (share > 0.0)
 
 
+@pytest.mark.slow
 def test_a_scan_of_shortlists_goes_on_too(brief: str, tmp_path: Path) -> None:
     whole, part = tmp_path / "whole.csv", tmp_path / "part.csv"
     axes = ["--over", "target_ph=5.8:6.2:0.2", "--top", "2"]

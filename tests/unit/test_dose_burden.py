@@ -132,6 +132,7 @@ def test_the_drug_is_no_burden_of_the_buffer():
     )
 
 
+@pytest.mark.slow
 def test_an_excipient_of_the_same_species_is_no_burden_of_the_buffer():
     """Histidine as a stabiliser is there with any buffer."""
     plain = own(ranked(1.0), 20.0).criteria["dose_burden"]

@@ -330,6 +330,7 @@ def test_a_liquid_product_fails_only_when_frozen() -> None:
     assert phosphate.verdict == "fails only when frozen, which this product is not"
 
 
+@pytest.mark.slow
 def test_a_brief_takes_further_temperatures() -> None:
     data = {
         "product": {"route": "intravenous", "form": "frozen"},
@@ -515,6 +516,7 @@ def test_the_figure_is_the_same_twice_and_says_what_it_shows() -> None:
         assert words in said, words
 
 
+@pytest.mark.slow
 def test_several_systems_are_small_multiples() -> None:
     result = _brief()
     figure = drawing.draw(result)

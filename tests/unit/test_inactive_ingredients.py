@@ -222,6 +222,7 @@ def test_every_route_of_the_words_is_one_of_ours() -> None:
 # --- in the shortlist
 
 
+@pytest.mark.slow
 def test_the_figure_is_marked_in_every_output(tmp_path: Path) -> None:
     path = _file(tmp_path, _row("HISTIDINE", amount="3.1"))
     brief = str(EXAMPLES / "antibody.toml")

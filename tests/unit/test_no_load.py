@@ -77,6 +77,7 @@ def test_every_output_says_so_and_still_shows_the_capacity():
     assert "5 mmol/L at least" in str(page.blocks())
 
 
+@pytest.mark.slow
 def test_draws_and_changes_do_without_it():
     found = with_confidence(shortlist(brief(), LIBRARY), draws=200)
     changes = sensitivity(complete(brief(), LIBRARY))

@@ -95,6 +95,7 @@ def test_shown(value: object, text: str) -> None:
     assert shown(value) == text
 
 
+@pytest.mark.slow
 def test_the_example_of_the_python_interface_runs() -> None:
     done = subprocess.run(
         [sys.executable, "-W", "error", str(EXAMPLES / "python_interface.py")],

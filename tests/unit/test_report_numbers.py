@@ -37,7 +37,15 @@ WORDING = (
 NUMBER = re.compile(r"\d")
 
 
-@pytest.fixture(params=[*NAMES, "enzyme drawn"])
+@pytest.fixture(
+    params=[
+        NAMES[0],
+        *(
+            pytest.param(n, marks=pytest.mark.slow)
+            for n in (*NAMES[1:], "enzyme drawn")
+        ),
+    ]
+)
 def report(request: pytest.FixtureRequest) -> Report:
     name, _, drawn = str(request.param).partition(" ")
     return example(name, 200 if drawn else 0)
