@@ -71,7 +71,10 @@ def _without_heads(candidates: Sequence[Candidate]) -> str:
             f"one is not evaluable{note}."
         )
     if bare.carried_share is not None and bare.carried_share < 1.0:
-        return f"No buffer is acceptable: {screened}. Nor is the product enough without one{note}."
+        return (
+            f"No buffer is acceptable: {screened}. Nor is the product enough without "
+            f"one{note}."
+        )
     sentence = screened[0].upper() + screened[1:]
     return f"No added buffer stays viable{note}. {sentence}."
 

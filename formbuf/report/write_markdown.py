@@ -24,8 +24,8 @@ from formbuf.report.write_html import SIGN_HEADS, heading_number
 
 #: Said once, before the first figure.
 WHERE_FIGURES_ARE = (
-    "Figures are drawn in the HTML and Word forms of this report; here each has its "
-    "caption and a description, and the tables beside it hold the values."
+    "in the HTML and Word forms of this report only; here each figure has its caption "
+    "and a description, and the tables beside it hold the values."
 )
 _ALWAYS = re.compile(r"([\\`*\[\]<>&|~$])")
 _EDGE_UNDERSCORE = re.compile(r"(?<![^\W_])_|_(?![^\W_])")
@@ -89,7 +89,7 @@ class _Markdown:
         elif isinstance(block, Figure):
             if not self.has_told_of_figures:
                 self.has_told_of_figures = True
-                yield escaped(WHERE_FIGURES_ARE)
+                yield f"> Drawing: {escaped(WHERE_FIGURES_ARE)}"
             yield f"**{self.document.labels[block.id]}.** {self.spans(block.caption)}"
             yield f"> Drawing: {escaped(block.alt)}"
         elif isinstance(block, SignatureTable):

@@ -174,7 +174,7 @@ def test_markdown_says_once_where_figures_are_and_describes_each(
     path = tmp_path / "report.md"
     assert formbuf("rationale", ANTIBODY, "-o", str(path)).code == 0
     text = path.read_text(encoding="utf-8")
-    assert text.count("Figures are drawn in the HTML and Word forms") == 1
+    assert text.count("> Drawing: in the HTML and Word forms of this report only;") == 1
     captions = re.findall(r"^\*\*Figure \d+\.\*\* .+$", text, re.MULTILINE)
     assert len(captions) >= 4
     for caption in captions:
