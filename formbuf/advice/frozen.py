@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from functools import lru_cache
 
 from formbuf.advice.case import Case
 from formbuf.advice.evaluate import Product
 from formbuf.advice.results import CriterionResult
 from formbuf.chemistry.freezing_records import FreezingContents, IonAmount
 from formbuf.errors import ConvergenceError, InputError
+from formbuf.library import Library
 from formbuf.library.records import System
 from formbuf.product.freezing_assess import (
     FreezingAssessment,
@@ -108,15 +110,15 @@ def freeze_to(
     mass = sum(row.g_l for row in product.composition)
 
     def assess(what: FreezingContents) -> FreezingAssessment:
-        return assess_freezing(
+        return _assessed(
             case.library,
             system,
             what,
-            lowest_c=lowest_c,
-            temperatures_c=temperatures_c,
-            concentration_mmol_l=concentration_mmol_l,
-            sugar_percent=sugar,
-            buffer_g_l=mass,
+            lowest_c,
+            temperatures_c,
+            concentration_mmol_l,
+            sugar,
+            mass,
         )
 
     try:
@@ -144,6 +146,30 @@ def freeze_to(
             )
             counted = eased
     return Frozen(found, counted, "; ".join(remarks), sugar)
+
+
+@lru_cache(maxsize=512)
+def _assessed(
+    library: Library,
+    system: System,
+    contents: FreezingContents,
+    lowest_c: float,
+    temperatures_c: tuple[float, ...] | None,
+    concentration_mmol_l: float,
+    sugar_percent: float,
+    buffer_g_l: float,
+) -> FreezingAssessment:
+    """Assess a composition once; grids of briefs ask for the same one many times."""
+    return assess_freezing(
+        library,
+        system,
+        contents,
+        lowest_c=lowest_c,
+        temperatures_c=temperatures_c,
+        concentration_mmol_l=concentration_mmol_l,
+        sugar_percent=sugar_percent,
+        buffer_g_l=buffer_g_l,
+    )
 
 
 def drying_notes(case: Case, product: Product) -> list[str]:
