@@ -175,7 +175,9 @@ def test_commands_without_a_brief_name_the_overlay_too(tmp_path: Path) -> None:
     "command",
     [
         "predict --add sucrose=100",
-        pytest.param("sensitivity examples/antibody.toml --reach 0.1", marks=pytest.mark.slow),
+        pytest.param(
+            "sensitivity examples/antibody.toml --reach 0.1", marks=pytest.mark.slow
+        ),
         "freeze-thaw --system sodium_phosphate --concentration 50 --ph 7.4 --to -10",
     ],
 )
