@@ -14,6 +14,7 @@ from xml.etree import ElementTree as ET
 
 import pytest
 
+from formbuf.advice import frozen
 from formbuf.advice.freeze_thaw import compare_freezing, freeze_composition
 from formbuf.advice.freeze_thaw_evidence import (
     RankedObservation,
@@ -287,6 +288,7 @@ def test_the_model_keeps_its_own_error(monkeypatch: pytest.MonkeyPatch) -> None:
         msg = "state not solved"
         raise ConvergenceError(msg)
 
+    frozen._assessed.cache_clear()
     monkeypatch.setattr("formbuf.product.freezing_assess.freeze_path", fail)
     with pytest.raises(ConvergenceError, match="state not solved"):
         _freeze()
