@@ -18,7 +18,7 @@ from formbuf.advice.screening import (
     screen,
     worst_per_topic,
 )
-from formbuf.advice.wording import plain
+from formbuf.advice.wording import lower_first, plain
 from formbuf.library.records import System
 from formbuf.product import quantities
 from formbuf.product.facts import candidate_facts
@@ -131,7 +131,7 @@ def shown_values(finding: Finding) -> str:
 def with_compatibility(
     case: Case, candidates: Sequence[Candidate]
 ) -> tuple[list[Candidate], tuple[Finding, ...]]:
-    """Add the compatibility criterion; what holds for all candidates ranks nobody.
+    """Add the compatibility criterion; what holds for all candidates ranks none.
 
     Parameters
     ----------
@@ -184,8 +184,8 @@ def _criterion(
     if heaviest is None:
         return CriterionResult(None, "", 1.0, "no finding of its own")
     unsure = heaviest.truth is None
-    text = f"{heaviest.rule}: {heaviest.text}" + (
-        " (not evaluable, taken as a warning)" if unsure else ""
-    )
+    rule = f"{heaviest.rule}, open, taken as a warning" if unsure else heaviest.rule
+    said = f"{heaviest.record.title}; {lower_first(heaviest.record.effect)}"
+    text = f"{said} ({rule})"
     sources = tuple(s for s in heaviest.record.sources if s)
     return CriterionResult(None, "", value, text, sources=sources, deviation_ln=spread)

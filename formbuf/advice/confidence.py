@@ -285,7 +285,7 @@ def _verdict(candidates: Sequence[Candidate], confidence: Confidence) -> str:
         return said
     lead, ranks = placed[0]
     share = 100.0 * ranks.lead.value
-    said = f"{said} It leads in {share:.0f} % of {confidence.draws} draws"
+    said = f"{said} The lead comes first in {share:.0f} % of {confidence.draws} draws"
     best, most = max(placed, key=lambda pair: pair[1].lead.value)
     if best.key != lead.key:
         said += f", {best.name} in {100.0 * most.lead.value:.0f} %"

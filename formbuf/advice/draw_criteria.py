@@ -18,6 +18,7 @@ from formbuf.advice.draw_candidate import CandidateDraws, Draws
 from formbuf.advice.draw_inputs import Input
 from formbuf.advice.ranking import group_of
 from formbuf.advice.results import Candidate
+from formbuf.advice.wording import criterion_name
 
 Array = NDArray[np.float64]
 
@@ -89,7 +90,7 @@ def log_desirabilities(
             )
         elif name in JUDGED_ADVICE and result.deviation_ln > 0.0:
             stream = f"judged:{name}:{group_of(candidate)}"
-            label = f"{name.replace('_', ' ')} of {candidate.name}"
+            label = f"{criterion_name(name)} of {candidate.name}"
             advice = JUDGED_ADVICE[name]
             inputs[stream] = Input(stream, label, advice, result.deviation_ln, "1")
             error = result.deviation_ln * draws.sampler.normal(stream)

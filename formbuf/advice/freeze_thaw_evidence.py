@@ -20,6 +20,7 @@ from formbuf.product.freezing_assess import (
     NEGLIGIBLE_BELOW,
     SUGAR_PERCENT,
     evidence_of,
+    lowest_computed_c,
 )
 from formbuf.product.freezing_data import Observation, load_freezing_data, observations
 
@@ -250,7 +251,9 @@ def where_samples_fall(
         return "no ice forms at the temperatures asked for", ()
     if found.quantified:
         if found.paths[0].event("onset") is None:
-            return "on the path: no salt reaches its solubility", ()
+            lowest = lowest_computed_c(found.paths[0])
+            where = f"on the path: no salt reaches its solubility down to {lowest:g} C"
+            return where, ()
         if frozen.sugar_percent >= SUGAR_PERCENT or _follows_rule(found.paths[0]):
             return found.where_samples_fall, RULE_SOURCES
         return f"between the two paths: {evidence.reason}", evidence.sources
@@ -315,8 +318,22 @@ def _turns_acid(path: FreezingPath) -> bool:
     return later[-1] < onset.ph
 
 
+def _known_of(seen: tuple[RankedObservation, ...]) -> str:
+    """Say why what is known of a system does not settle its class."""
+    if not seen:
+        return "no evidence is known"
+    if published_change(seen) is None:
+        return "published without figures"
+    return "what is published does not settle it"
+
+
 def verdict(
-    system: System, frozen: Frozen, *, is_frozen: bool, volatile_share: float | None
+    system: System,
+    frozen: Frozen,
+    seen: tuple[RankedObservation, ...] = (),
+    *,
+    is_frozen: bool,
+    volatile_share: float | None,
 ) -> str:
     """Return in one sentence what to do about a system.
 
@@ -324,6 +341,8 @@ def verdict(
     ----------
     system : System
     frozen : Frozen
+    seen : tuple of RankedObservation
+        What was published of it.
     is_frozen : bool
         Whether the product is ever frozen.
     volatile_share : float or None
@@ -331,15 +350,20 @@ def verdict(
     """
     found = frozen.assessment
     name = frozen.counted_class
-    drift = found.cooling_shift
+    drift, shift = found.cooling_shift, found.freezing_shift
     if not has_ice(frozen):
         text = "stays liquid at the temperatures asked for"
     elif name == "negligible":
-        text = "holds its pH on freezing"
+        text = "little change was observed; confirm for this product"
+        is_small = shift is not None and abs(shift) < NEGLIGIBLE_BELOW
         if frozen.remark:
             text = "small shift expected; confirm that nothing crystallises"
-        elif drift is not None and abs(drift) >= NEGLIGIBLE_BELOW:
+        elif is_small and drift is not None and abs(drift) >= NEGLIGIBLE_BELOW:
             text = "freezing adds little; cooling alone moves the pH"
+        elif found.quantified:
+            text = "computed to move little on freezing; confirm by measurement"
+        elif not is_small:
+            text = "little change was observed, more is computed; measure it"
     elif name == "moderate":
         text = "usable if the pH of the frozen sample is measured"
     elif name == "severe":
@@ -356,7 +380,7 @@ def verdict(
     elif name == "sources disagree":
         text = "measure it: published results disagree"
     else:
-        text = "measure it: no evidence is known"
+        text = f"measure it: {_known_of(seen)}"
     if volatile_share is not None:
         text += (
             f"; on drying {100.0 * volatile_share:.2g} % stands in its volatile form "

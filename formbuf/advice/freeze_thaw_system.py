@@ -147,7 +147,7 @@ def system_of(
         where,
         sources,
         thawing(case.library, made.system, frozen, contents),
-        verdict(made.system, frozen, is_frozen=is_frozen, volatile_share=lost),
+        verdict(made.system, frozen, seen, is_frozen=is_frozen, volatile_share=lost),
         share,
         (*product.mixture.notes, *_left_out(product)),
         trace_of(case, made, lowest_c),

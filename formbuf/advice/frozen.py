@@ -8,6 +8,7 @@ from functools import lru_cache
 from formbuf.advice.case import Case
 from formbuf.advice.evaluate import Product
 from formbuf.advice.results import CriterionResult
+from formbuf.advice.wording import upper_first
 from formbuf.chemistry.freezing_records import FreezingContents, IonAmount
 from formbuf.errors import ConvergenceError, InputError
 from formbuf.library import Library
@@ -219,7 +220,8 @@ def warm_note(case: Case, system: System) -> str:
     known = evidence_of(case.library, system)
     if known.freezing_class != "severe":
         return ""
-    return f"fails only when frozen, which this product is not: {known.reason}"
+    reason = upper_first(known.reason)
+    return f"would fail if frozen; this product is not frozen. {reason}"
 
 
 def _sugar_percent(case: Case, product: Product) -> float:

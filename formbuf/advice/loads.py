@@ -40,6 +40,12 @@ class LoadItem:
     reason: str
     is_default: bool
 
+    @property
+    def told_basis(self) -> str:
+        """The basis in words: a load that the brief states is ``stated``, no judgement."""
+        is_stated = self.basis == "judgement" and not self.is_default
+        return "stated" if is_stated else self.basis
+
 
 @dataclass(frozen=True, slots=True)
 class LoadBudget:

@@ -17,6 +17,7 @@ from formbuf.advice.evaluate import evaluate
 from formbuf.advice.measure import judge_criteria
 from formbuf.advice.results import Candidate, CriterionResult, Standing
 from formbuf.advice.sizing import Sizing, windows_of
+from formbuf.advice.wording import plain
 from formbuf.chemistry.titration import STRONG_ACID, STRONG_BASE
 from formbuf.errors import InputError
 from formbuf.library.records import System
@@ -26,6 +27,8 @@ from formbuf.product.vocabulary import PROTEIN_KINDS
 
 #: A strong acid or base alone makes the product; as a system without species.
 SYSTEM_ID = "none"
+#: Share of the loads from which it is said how many times they are carried.
+MOST_IN_PERCENT = 10.0
 
 
 def judge_none(case: Case) -> Candidate:
@@ -134,24 +137,30 @@ def _standing(case: Case, carried: float | None, how: str) -> tuple[Standing, st
             "the drug's pK values or a titration are not given: whether the product "
             "holds its pH without a buffer is open"
         )
+    if how == "no load":
+        return "back-up", "no load is expected, so there is none to carry"
     basis = {
         "titration": "by its measured titration",
-        "pka": "by the drug's pK values",
-        "residues": "by its residues, an estimate that a titration should confirm",
-        "net_charge": "by its isoelectric point and charge, a straight line",
-        "no load": "since no load is expected",
+        "pka": "calculated from the drug's pK values",
+        "residues": "estimated from its ionisable groups",
+        "net_charge": "estimated from its isoelectric point and net charge",
         "rest": "by water and excipients alone, whatever the drug adds",
     }[how]
-    note = f"the product by itself carries {_share(carried)} of the loads, {basis}"
+    note = f"the product by itself carries {_share(carried)}, {basis}"
     if carried < 1.0:
         return "viable", note
     return ("lead" if how == "titration" else "back-up"), note
 
 
 def _share(carried: float | None) -> str:
-    if carried is None or carried >= 1.0:
-        return "all"
-    return f"{100.0 * carried:.0f} %"
+    """Return the share of the loads carried, of the loads."""
+    if carried is None or not np.isfinite(carried):
+        return "all of the loads"
+    if carried >= MOST_IN_PERCENT:
+        return f"{plain(carried)} times the loads"
+    if 0.995 <= carried < 1.0:
+        return "just under 100 % of the loads"
+    return f"{100.0 * carried:.0f} % of the loads"
 
 
 def _made(case: Case, system: System, carried: float | None) -> Candidate:
@@ -222,9 +231,7 @@ def _made(case: Case, system: System, carried: float | None) -> Candidate:
             judge_criteria(case, system, product, sizing, found, ceiling, 0.0)
         )
         if "capacity" in judged:
-            text = (
-                f"without a buffer the product carries {_share(carried)} of the loads"
-            )
+            text = f"without a buffer the product carries {_share(carried)}"
             judged["capacity"] = replace(judged["capacity"], text=text)
     storage = [s for s in product.states if "storage" in s.kinds]
     reference = next(s.ph for s in product.states if "measure" in s.kinds)

@@ -9,7 +9,7 @@ from typing import Any
 
 from formbuf.advice.confidence import with_confidence
 from formbuf.advice.results import Candidate, Shortlist
-from formbuf.advice.scan_grid import Grid, Value
+from formbuf.advice.scan_grid import Grid, Value, bracketed, dotted
 from formbuf.advice.shortlist import shortlist
 from formbuf.errors import ConvergenceError, InputError
 from formbuf.library import Library
@@ -173,7 +173,8 @@ def varied(brief: Brief, point: Mapping[str, Value]) -> Brief:
     brief : Brief
     point : mapping of key to value
         Keys of the brief with dots between tables (``loads.acid_mmol_l``); entries of
-        a list by their number from 1 (``storage.1.temperature_c``).
+        a list by their number from 1 (``storage[1].temperature_c``, or with a dot,
+        ``storage.1.temperature_c``).
 
     Raises
     ------
@@ -202,7 +203,8 @@ def _move_target(data: dict[str, Any], value: Value) -> None:
 
 
 def _put(data: dict[str, Any], key: str, value: Value) -> None:
-    *tables, last = key.split(".")
+    *tables, last = dotted(key).split(".")
+    key = bracketed(key)
     place: Any = data
     for name in tables:
         if isinstance(place, list):

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -94,6 +95,28 @@ def parse_axis(text: str) -> Axis:
     return Axis(key, values)
 
 
+def dotted(key: str) -> str:
+    """Return a key with the number of a list entry after a dot.
+
+    Examples
+    --------
+    >>> dotted("storage[1].temperature_c"), dotted("storage.1.temperature_c")
+    ('storage.1.temperature_c', 'storage.1.temperature_c')
+    """
+    return re.sub(r"\[(\d+)\]", r".\1", key)
+
+
+def bracketed(key: str) -> str:
+    """Return a key with the number of a list entry in brackets, as briefs report it.
+
+    Examples
+    --------
+    >>> bracketed("storage.1.temperature_c"), bracketed("loads.acid_mmol_l")
+    ('storage[1].temperature_c', 'loads.acid_mmol_l')
+    """
+    return re.sub(r"\.(\d+)(?=\.|$)", r"[\1]", key)
+
+
 def grid_of(axes: Sequence[Axis]) -> Grid:
     """Return the grid of some axes.
 
@@ -105,10 +128,10 @@ def grid_of(axes: Sequence[Axis]) -> Grid:
     if not axes:
         msg = f"a scan needs at least one --over, allowed {FORM}"
         raise InputError(msg)
-    keys = [axis.key for axis in axes]
+    keys = [dotted(axis.key) for axis in axes]
     for key in keys:
         if keys.count(key) > 1:
-            msg = f"--over: {key} is varied twice, allowed once"
+            msg = f"--over: {bracketed(key)} is varied twice, allowed once"
             raise InputError(msg)
     grid = Grid(tuple(axes))
     if grid.size > MOST_POINTS:

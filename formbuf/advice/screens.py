@@ -261,7 +261,7 @@ def solubility_screens(
         elif abs(at - cold) > 1.0 and here > WORTH_SAYING * limit:
             notes.append(
                 f"solubility of {material.name} is known at {at:g} C only "
-                f"({limit:.3g} g per 100 g of water; here {here:.3g}): not evaluable "
+                f"({limit:.3g} g per 100 g of water; here {here:.3g}): not judged "
                 f"at {cold:g} C"
             )
     return screens, notes

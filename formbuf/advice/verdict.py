@@ -68,13 +68,15 @@ def _without_heads(candidates: Sequence[Candidate]) -> str:
     if bare.standing == "not evaluable":
         return (
             f"No buffer is acceptable: {screened}. Whether the product stands without "
-            f"one is not evaluable{note}."
+            f"one is open{note}."
         )
     if bare.carried_share is not None and bare.carried_share < 1.0:
         return (
             f"No buffer is acceptable: {screened}. Nor is the product enough without "
             f"one{note}."
         )
+    if bare.carried_share is not None and bare.standing == "back-up":
+        note += "; to be confirmed by a titration"
     sentence = screened[0].upper() + screened[1:]
     return f"No added buffer stays viable{note}. {sentence}."
 

@@ -19,7 +19,7 @@ from formbuf.bench.setup import ROOM_C, Bench, Made, make_product
 from formbuf.bench.ways import Way, ways_of, with_hydrates_in_hand
 from formbuf.chemistry.capacity import capacity_mol_kg_ph
 from formbuf.chemistry.speciation import water_ions
-from formbuf.constants import WATER_MOLAR_MASS_KG_MOL
+from formbuf.constants import LIQUID_HIGH_C, LIQUID_LOW_C, WATER_MOLAR_MASS_KG_MOL
 from formbuf.errors import InputError
 from formbuf.product.composition import Extra
 
@@ -210,9 +210,10 @@ def _readings(bench: Bench, made: Made) -> tuple[Reading, ...]:
     kinds.setdefault(ROOM_C, [])
     at = np.array(sorted(kinds))
     ph = made.mixture.solve(at).ph
-    above = made.mixture.solve(at + SLOPE_STEP_K).ph
-    below = made.mixture.solve(at - SLOPE_STEP_K).ph
-    slope = (above - below) / (2.0 * SLOPE_STEP_K)
+    warmer = np.minimum(at + SLOPE_STEP_K, LIQUID_HIGH_C)
+    cooler = np.maximum(at - SLOPE_STEP_K, LIQUID_LOW_C)
+    rise = made.mixture.solve(warmer).ph - made.mixture.solve(cooler).ph
+    slope = rise / (warmer - cooler)
     return tuple(
         Reading(float(t), tuple(dict.fromkeys(kinds[float(t)])), float(p), float(s))
         for t, p, s in zip(at, ph, slope, strict=True)

@@ -35,14 +35,14 @@ def steps(
     first = allowance.make_up_first_percent
     part = f"{0.8 * water_g / 1000.0:.4g} L"
     less = ", less what comes with the drug" if bench.background.extras else ""
-    found = [f"Put about 80 % of the water ({part}{less}) in, at {t:g} C."]
+    found = [f"Take about 80 % of the water ({part}{less}) at {t:g} C."]
     if buffer:
         way = ", each before the next" if len(buffer) > 1 else ""
         found.append(f"Dissolve {_listed(buffer)}{way}.")
     if solids:
         found.append(f"Dissolve {_listed(solids)}.")
+    names = _listed([line.grade.name for line in titrants])
     if titrants:
-        names = _listed([line.grade.name for line in titrants])
         found.append(
             f"Add nine tenths of the {names} worked out, slowly and with stirring."
         )
@@ -54,10 +54,18 @@ def steps(
     made_up = f"{first:g} % ({first / 100.0 * batch_l:.4g} L)"
     titrants_here = f"{allowance.acid_grade.name} or {allowance.base_grade.name}"
     found.append(f"Bring to {t:g} C, make up to {made_up}.")
-    found.append(
-        f"Read the pH: it should be {meter:.2f} at {t:g} C. Set it with {titrants_here}; "
-        "more than the adjustment allowance points to a mistake: stop and look for it."
-    )
+    if titrants:
+        found.append(
+            f"Add the rest of the {names} in portions until the pH reads {meter:.2f} at "
+            f"{t:g} C. If the total differs from the amount worked out by more than the "
+            "adjustment allowance, stop and look for a mistake."
+        )
+    else:
+        found.append(
+            f"Read the pH: it should be {meter:.2f} at {t:g} C. Set it with "
+            f"{titrants_here}; more than the adjustment allowance points to a mistake: "
+            "stop and look for it."
+        )
     found.append(
         f"Make up with water to {batch_l:.4g} L, mix, read pH and osmolality, filter."
     )
@@ -69,16 +77,18 @@ def cautions(
 ) -> tuple[str, ...]:
     """Return what to look out for with these materials."""
     found: list[str] = []
-    grades = [line.grade for line in lines]
-    if any(line.role == "titrant" for line in lines):
-        grades += [allowance.acid_grade, allowance.base_grade]
+    setting = [allowance.acid_grade, allowance.base_grade]
+    grades = [*(line.grade for line in lines), *setting]
     for grade in grades:
         if grade.caution:
             found.append(f"{grade.name}: {grade.caution}")
         if grade.note and (grade.form != "solid" or grade.stated):
             found.append(f"{grade.name}: {grade.note}")
+    setting += [line.grade for line in lines if line.role == "titrant"]
     strong = [
-        g for g in grades if g.strength_mol_l and g.strength_mol_l > STRONG_FROM_MOL_L
+        g
+        for g in setting
+        if g.strength_mol_l is None or g.strength_mol_l > STRONG_FROM_MOL_L
     ]
     if bench.background.extras and strong:
         found.append(

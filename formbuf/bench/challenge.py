@@ -131,7 +131,8 @@ def challenge(
     Returns
     -------
     Challenge
-        Without series and limits, 21 additions to half beyond the window.
+        Without series and limits, 21 additions up to 1.5 times the acid and base that
+        use up the window.
 
     Raises
     ------
@@ -153,7 +154,13 @@ def challenge(
         *bench.notes,
         *made.mixture.notes,
     ]
-    if not bare.mixture.ladders:
+    if bench.uncounted:
+        notes.append(
+            "the columns without buffer are those of water and excipients, not of this "
+            f"product: what its {bench.uncounted} buffers is not counted, nor carbon "
+            "dioxide and carried-over acid"
+        )
+    elif not bare.mixture.ladders:
         notes.append(
             "without buffer nothing but water holds the pH: the figures are those of a "
             "product free of carbon dioxide and carried-over acid"

@@ -200,7 +200,7 @@ def grade_of(library: Library, material: Material, in_hand: InHand) -> Grade:
     assay = in_hand.assay_percent.get(material.id)
     water = in_hand.water_percent.get(material.id)
     if (assay, water) != (None, None) and grade.strength_mol_l is not None:
-        grade = _by_assay(material)
+        grade = _by_assay(material, known, assay)
     if assay is not None:
         grade = replace(grade, assay_percent=assay)
         stated.append("assay")
@@ -213,9 +213,24 @@ def grade_of(library: Library, material: Material, in_hand: InHand) -> Grade:
     return replace(grade, stated=tuple(stated))
 
 
-def _by_assay(material: Material) -> Grade:
-    """Return the pure material, of which an assay is said; a strength gives way."""
-    return Grade(material.id, material.name, material.id, "solid")
+def _by_assay(
+    material: Material, known: Mapping[str, Grade], assay: float | None
+) -> Grade:
+    """Return the pure material, of which an assay is said; a strength gives way.
+
+    Caution and note are those of the grade of that material with the nearest assay.
+    """
+    grade = Grade(material.id, material.name, material.id, "solid")
+    alike = [
+        g
+        for g in known.values()
+        if g.material == material.id and g.strength_mol_l is None
+    ]
+    if not alike:
+        return grade
+    wanted = 100.0 if assay is None else assay
+    nearest = min(alike, key=lambda g: abs(g.assay_percent - wanted))
+    return replace(grade, caution=nearest.caution, note=nearest.note)
 
 
 def _numbers(

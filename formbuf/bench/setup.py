@@ -64,6 +64,8 @@ class Bench:
     given_mmol_l : mapping of str to float or None
         Materials of an own formula, made as they are [mmol/L]; None where the system is
         made to the target.
+    uncounted : str
+        ``protein`` or ``drug`` where what it buffers is not known and left out.
     """
 
     library: Library
@@ -82,6 +84,7 @@ class Bench:
     carbon_dioxide: CarbonDioxideInfo | None = None
     notes: tuple[str, ...] = ()
     given_mmol_l: Mapping[str, float] | None = None
+    uncounted: str = ""
 
     @property
     def storage_temperatures_c(self) -> tuple[float, ...]:
@@ -138,7 +141,10 @@ def bench_from_brief(
     """
     brief, library = completed.brief, completed.library
     _check_concentration(system, concentration_mmol_l)
-    ph = brief.ph
+    ph, drug = brief.ph, brief.drug
+    uncounted = ""
+    if drug.kind != "none" and drug.charge_known_from is None:
+        uncounted = "protein" if drug.is_protein else "drug"
     return Bench(
         library,
         osmotic_law(library),
@@ -155,6 +161,7 @@ def bench_from_brief(
         brief.dose.volume_ml,
         brief.carbon_dioxide,
         completed.warnings,
+        uncounted=uncounted,
     )
 
 

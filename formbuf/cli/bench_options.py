@@ -53,7 +53,9 @@ OsmolalityOption = Annotated[
 ]
 StoreOption = Annotated[
     list[str] | None,
-    typer.Option(metavar="C", help="Storage temperature; may be repeated."),
+    typer.Option(
+        metavar="C", help="Storage temperature, degrees Celsius; may be repeated."
+    ),
 ]
 PrepareOption = Annotated[
     str | None,

@@ -97,15 +97,16 @@ def challenge_command(
 ) -> None:
     """Show pH under strong acid and base, beside the same product without buffer.
 
-    Without --added or --to-ph, a series to half beyond the window. Also what uses up
-    the window at each temperature, and pH in contact with carbon dioxide.
+    Without --added or --to-ph, a series up to 1.5 times the acid and base that use up
+    the window. Also what uses up the window at each temperature, and pH in contact
+    with carbon dioxide.
     """
     from formbuf.cli.emit import Target, emit, say
     from formbuf.cli.freeze_thaw import check_figure
 
     target = Target(format_, json_, output)
-    target.check()
     check_figure(figure, output)
+    target.check()
     asked = Asked(
         brief,
         system,

@@ -28,7 +28,7 @@ def changes_command(
     json_: JsonOption = False,
     output: OutputOption = None,
 ) -> None:
-    """Compare two results of ``shortlist`` or ``rationale``.
+    """Compare two results of shortlist or rationale.
 
     Says what changed in brief, knowledge and versions, and which candidates moved and
     why.

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, TextIO
 
-from formbuf.errors import OutputError, UsageError
+from formbuf.errors import OutputError, UsageError, nearest
 from formbuf.output import documents
 from formbuf.output.page import NARROW
 from formbuf.output.writers import (
@@ -26,6 +26,8 @@ if TYPE_CHECKING:
 #: Width of a table in a file [characters].
 FILE_WIDTH = 120
 LARGEST_WIDTH = 10000
+#: Endings of a file that say what is written, as they are named to people.
+OUTPUT_ENDINGS = (".txt", ".json", ".csv", ".md", ".docx", ".xlsx")
 #: Exit code of a program whose reader went away (128 plus the signal).
 EXIT_CLOSED_PIPE = 141
 
@@ -77,12 +79,34 @@ class Target:
     def check(self) -> None:
         """Refuse what cannot be used before anything is computed."""
         self.chosen()
-        document = self.document()
-        if document is not None:
-            documents.require(document)
         if self.output is not None and not self.output.strip():
             msg = "--output: the file name is empty, allowed a file"
             raise UsageError(msg)
+        self._check_ending()
+        document = self.document()
+        if document is not None:
+            documents.require(document)
+
+    def _check_ending(self) -> None:
+        """Refuse an ending that says no format, unless the format is said besides.
+
+        A name without an ending takes a table; so does a pipe or a device.
+        """
+        if self.output is None or self.format is not None or self.json:
+            return
+        path = Path(self.output)
+        ending = path.suffix
+        if not ending or ending.lower() in (*ENDINGS, *documents.ENDINGS):
+            return
+        if path.exists() and not path.is_file() and not path.is_dir():
+            return
+        near = nearest(ending.lower(), OUTPUT_ENDINGS, 1)
+        hint = (
+            f"Did you mean {near[0]}?" if near else "Or name the format with --format."
+        )
+        allowed = f"{', '.join(OUTPUT_ENDINGS[:-1])} or {OUTPUT_ENDINGS[-1]}"
+        msg = f"--output: {self.output} has {ending!r}, allowed {allowed}"
+        raise UsageError(msg, hint=hint)
 
 
 def emit(page: Page, target: Target) -> None:

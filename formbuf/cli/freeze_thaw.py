@@ -63,7 +63,10 @@ def freeze_thaw_command(
     ] = None,
     to: Annotated[
         str | None,
-        typer.Option(metavar="C", help="Coldest temperature, -30 to 0; -20 if absent."),
+        typer.Option(
+            metavar="C",
+            help="Coldest temperature, -30 to 0; -20 if absent. pH is computed to -20.",
+        ),
     ] = None,
     nacl: Annotated[
         str | None, typer.Option(metavar="MMOL_L", help="Sodium chloride, mmol/L.")
@@ -71,7 +74,11 @@ def freeze_thaw_command(
     kcl: Annotated[
         str | None,
         typer.Option(
-            "--kcl", "--potassium", metavar="MMOL_L", help="Potassium chloride, mmol/L."
+            "--kcl",
+            "--potassium-chloride",
+            "--potassium",
+            metavar="MMOL_L",
+            help="Potassium chloride, mmol/L.",
         ),
     ] = None,
     sucrose: Annotated[
@@ -103,8 +110,8 @@ def freeze_thaw_command(
     from formbuf.cli.emit import Target, emit, say
 
     target = Target(format_, json_, output)
-    target.check()
     check_figure(figure, output)
+    target.check()
     given = {
         "--nacl": nacl,
         "--kcl": kcl,

@@ -58,8 +58,9 @@ def formbuf(
     """Choose and justify the buffer of a drug product.
 
     A calculation aid: measured values, compendia, local rules and qualified staff
-    decide. Exit codes: 0 done, 1 no acceptable candidate, 2 usage, 3 bad brief or
-    value, 4 knowledge broken, 5 no convergence, 70 a bug.
+    decide. In options, C means degrees Celsius. Exit codes: 0 done, 1 no acceptable
+    candidate or a qualification group failed, 2 usage, 3 bad brief or value, 4
+    knowledge broken, 5 no convergence, 70 a bug, 130 interrupted.
     """
 
 

@@ -18,13 +18,18 @@ FormatOption = Annotated[
     typer.Option(
         "--format",
         metavar="FORMAT",
-        help="table, json, csv or markdown; with -o, the ending decides.",
+        help="table, json, csv or markdown; if absent, the ending of -o decides.",
     ),
 ]
 JsonOption = Annotated[bool, typer.Option("--json", help="Short for --format json.")]
 OutputOption = Annotated[
     str | None,
-    typer.Option("--output", "-o", metavar="FILE", help="Write to a file."),
+    typer.Option(
+        "--output",
+        "-o",
+        metavar="FILE",
+        help="Write to a file: .txt, .json, .csv, .md, .docx or .xlsx.",
+    ),
 ]
 KnowledgeOption = Annotated[
     str | None,

@@ -72,8 +72,8 @@ def record_target(record: str | None) -> Target | None:
     if record is None:
         return None
     target = Target(None, False, record)
-    target.check()
     if target.document() != "docx" and target.chosen() not in ("markdown", "json"):
         msg = f"--record: {record!r}, allowed a file that ends in .md, .docx or .json"
         raise UsageError(msg)
+    target.check()
     return target

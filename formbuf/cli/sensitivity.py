@@ -58,8 +58,8 @@ def sensitivity_command(
     from formbuf.cli.progress import Progress
 
     target = Target(format_, json_, output)
-    target.check()
     check_figure(figure, output)
+    target.check()
     wide, fine = number("--reach", reach), number("--step", step)
     from formbuf.advice.decision_map import (
         DEFAULT_REACH_PH,

@@ -40,7 +40,9 @@ def shortlist_command(
     ] = None,
     store: Annotated[
         list[str] | None,
-        typer.Option(metavar="C", help="Storage temperature; may be repeated."),
+        typer.Option(
+            metavar="C", help="Storage temperature, degrees Celsius; may be repeated."
+        ),
     ] = None,
     form: Annotated[
         str | None, typer.Option(metavar="FORM", help="liquid, frozen or dried.")
@@ -69,7 +71,7 @@ def shortlist_command(
         typer.Option(
             metavar="N",
             help="Draw every uncertain input N times (2500 is usual): intervals, "
-            "chances, and ties that rest on them. Takes a moment longer, so off.",
+            "chances, and ties that rest on them. Off by default.",
         ),
     ] = None,
     seed: Annotated[

@@ -6,6 +6,7 @@ from typing import Any
 
 from formbuf.bench.batch_records import BatchSheet, Line, WaySheet
 from formbuf.bench.grades import Grade
+from formbuf.library import Library
 from formbuf.output import serialise, words
 from formbuf.output.bench_words import (
     head,
@@ -134,13 +135,13 @@ def blocks(sheet: BatchSheet) -> list[Block]:
         )
         found.append(Paragraph(f"Of the total: {shares}."))
     for letter, way in zip("AB", sheet.ways, strict=False):
-        found += _way_blocks(letter, way)
+        found += _way_blocks(bench.library, letter, way)
     found += section("Notes", Items(sheet.notes))
     found.append(Paragraph(words.CAUTION))
     return found
 
 
-def _way_blocks(letter: str, way: WaySheet) -> list[Block]:
+def _way_blocks(library: Library, letter: str, way: WaySheet) -> list[Block]:
     found: list[Block] = [
         Heading(f"Way {letter}: {way.way.title}"),
         _weigh_grid(way),
@@ -160,7 +161,9 @@ def _way_blocks(letter: str, way: WaySheet) -> list[Block]:
     ]
     found += section("Order of addition", _steps(way), level=3)
     found += section("What the meter reads", _readings(way), _storage(way), level=3)
-    found += section("If something is off", _errors(way), _wrong(way), level=3)
+    found += section(
+        "If something is off", _errors(library, way), _wrong(library, way), level=3
+    )
     found += section("Checks", Items(_checks(way)), level=3)
     found += section("Cautions", Items(way.cautions), level=3)
     return found
@@ -250,11 +253,15 @@ def _storage(way: WaySheet) -> Grid:
     )
 
 
-def _errors(way: WaySheet) -> Grid:
+def _errors(library: Library, way: WaySheet) -> Grid:
     names = {line.material: line.grade.name for line in way.lines}
+    names = {
+        e.material: names.get(e.material, library.find_material(e.material).name)
+        for e in way.weighing_errors
+    }
     rows = [
         (
-            f"1 % more {names.get(e.material, e.material)}",
+            f"1 % more {names[e.material]}",
             decimals(e.d_ph, 3, sign=True),
             decimals(e.d_osmolality_mosm_kg, 1, sign=True),
         )
@@ -268,7 +275,11 @@ def _errors(way: WaySheet) -> Grid:
         )
     )
     rows.append(
-        ("meter set 2 K too high", decimals(way.compensation_d_ph, 3, sign=True), "-")
+        (
+            "meter compensation set 2 K too high",
+            decimals(way.compensation_d_ph, 3, sign=True),
+            "-",
+        )
     )
     return Grid(
         (
@@ -280,7 +291,7 @@ def _errors(way: WaySheet) -> Grid:
     )
 
 
-def _wrong(way: WaySheet) -> Grid:
+def _wrong(library: Library, way: WaySheet) -> Grid:
     return Grid(
         (
             Column("Weighed by mistake"),
@@ -291,8 +302,8 @@ def _wrong(way: WaySheet) -> Grid:
         ),
         tuple(
             (
-                w.weighed,
-                w.meant,
+                library.find_material(w.weighed).name,
+                library.find_material(w.meant).name,
                 decimals(w.ph, 2),
                 decimals(w.d_ph, 2, sign=True),
                 decimals(100.0 * w.amount_share, 0),

@@ -8,6 +8,9 @@ from typing import Any
 from formbuf.bench.setup import Bench
 from formbuf.output import serialise
 
+#: What a temperature stands for, where the word of the data is no noun.
+KIND_WORDS = {"measure": "measurement", "prepare": "preparation"}
+
 
 def made_words(bench: Bench) -> str:
     """Return strength and system: 20 mmol/L histidine hydrochloride."""
@@ -29,7 +32,7 @@ def target_words(bench: Bench) -> str:
 
 def kinds_words(kinds: tuple[str, ...]) -> str:
     """Return what a temperature stands for, in words."""
-    return ", ".join(kinds)
+    return ", ".join(KIND_WORDS.get(kind, kind) for kind in kinds)
 
 
 def bench_dict(bench: Bench) -> dict[str, Any]:

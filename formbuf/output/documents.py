@@ -48,9 +48,9 @@ def require(kind: Kind) -> None:
             f"--output: {needed.noun} needs the package {needed.module}, which is not "
             "installed"
         )
-        what = f"formbuf[{needed.extra}]" if needed.extra else "formbuf"
+        what = f".[{needed.extra}]" if needed.extra else "."
         hint = (
-            f"Run `pip install '{what}'`, or give a file that ends in "
+            f"Run `pip install '{what}'` in the checkout, or give a file that ends in "
             f".{needed.instead}."
         )
         raise UsageError(msg, hint=hint)

@@ -10,6 +10,7 @@ from formbuf.advice.loads import LoadItem
 from formbuf.advice.results import Candidate, Shortlist
 from formbuf.output import explain_parts as parts
 from formbuf.output import serialise, words
+from formbuf.output.bench_words import kinds_words
 from formbuf.output.figures import ABSENT, decimals, plainly, significant
 from formbuf.output.leaves import leaves
 from formbuf.output.page import (
@@ -67,7 +68,7 @@ def blocks(
     found += section("States", _states(c), Paragraph(_state_legend(result, c)))
     found += section("Dissolved at the measurement temperature", parts.species_grid(c))
     found += section("Freezing and drying", *parts.frozen_blocks(c))
-    found += section("Findings that fired or are open", _findings(c))
+    found += section("Findings that apply or are open", _findings(c))
     found += section("What a dose brings", parts.exposures_grid(c.exposures))
     found += section("Ionization", parts.ionization_grid(result, c))
     found += section("Notes", Items(c.notes))
@@ -118,7 +119,7 @@ def _criteria(result: Shortlist, c: Candidate) -> Grid:
             (
                 words.criterion_name(name),
                 significant(judged.value),
-                "" if judged.unit == "1" else judged.unit,
+                "share" if judged.unit == "1" else judged.unit,
                 decimals(judged.desirability, 3),
                 plainly(result.settings.weights.get(name)),
                 _anchors(result, c, name),
@@ -213,7 +214,7 @@ def _loads(result: Shortlist) -> Grid:
             item.name,
             significant(item.acid_mmol_l),
             significant(item.base_mmol_l),
-            item.basis,
+            item.told_basis,
             item.reason,
         )
         for item in merged_loads(result.loads.items)
@@ -242,7 +243,7 @@ def _states(c: Candidate) -> Grid:
     rows = tuple(
         (
             decimals(s.temperature_c, 1).removesuffix(".0"),
-            ", ".join(s.kinds),
+            kinds_words(s.kinds),
             decimals(s.ph, 3),
             decimals(s.ph_slope_per_k, 4, sign=True),
             significant(s.capacity_mmol_l_ph),
@@ -290,8 +291,8 @@ def _findings(c: Candidate) -> Grid:
     rows = tuple(
         (
             f.rule,
-            f.severity,
-            f.outcome,
+            words.SEVERITY_WORDS.get(f.severity, f.severity),
+            words.OUTCOME_WORDS.get(f.outcome, f.outcome),
             f.basis,
             _finding_text(f),
         )
@@ -308,7 +309,8 @@ def _findings(c: Candidate) -> Grid:
 
 
 def _finding_text(finding: Any) -> str:
-    text = str(finding.text)
+    record = getattr(finding, "record", None)
+    text = f"{record.title}. {record.effect}" if record else str(finding.text)
     missing = getattr(finding, "missing", ())
     values = getattr(finding, "values", {})
     if finding.outcome == "fired" and values:

@@ -58,7 +58,8 @@ _KINDS: Mapping[str, str] = {
 }
 _SUMMARY_LEGEND = (
     "Freezing adds: largest difference of a path from the same liquid cooled without "
-    "ice, which decides the class; cooling alone: what that liquid does by itself. "
+    "ice; it decides the class where both paths are computed (phosphates), elsewhere "
+    "published observations do. Cooling alone: what that liquid does by itself. "
     "Published change: lowest to highest observation with a figure, whatever its "
     "conditions, and their number."
 )

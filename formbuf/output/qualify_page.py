@@ -30,6 +30,7 @@ PURPOSE = (
     "that the program computes here what it computed when it was made, and how near "
     "that is to the literature; it does not say that it suits your use."
 )
+SUITED = "Passing does not say that it suits your use."
 #: What a person fills in; nothing here is filled by the program.
 UNSIGNED = ("Performed by", "Reviewed by", "Approved by")
 
@@ -84,6 +85,7 @@ def blocks(result: Qualification) -> list[Block]:
     found += section("Known misses", _reasons(known))
     found += section("Notes", Items(result.notes))
     found.append(Paragraph(verdict(result), strong=True))
+    found.append(Paragraph(SUITED))
     return found
 
 

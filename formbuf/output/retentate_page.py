@@ -142,7 +142,11 @@ def _materials(one: Retentate) -> Grid:
     return Grid(
         (Column("Diafiltration buffer made of"), number("mmol/L"), number("g/L")),
         tuple(
-            (row["material"], significant(row["mmol_l"], 4), significant(row["g_l"], 4))
+            (
+                one.bench.library.find_material(row["material"]).name,
+                significant(row["mmol_l"], 4),
+                significant(row["g_l"], 4),
+            )
             for row in rows
         ),
     )

@@ -86,7 +86,7 @@ def _requirement(r: RequirementChange) -> tuple[str, ...]:
     now = f"{significant(r.value, digits)}{unit}"
     if r.needed is None:
         limit = significant(r.limit, digits)
-        return (name, now, f"not to {limit}{unit}", ABSENT)
+        return (name, now, f"not {r.direction} to {limit}{unit}", ABSENT)
     then = r.new_lead_name or "no candidate"
     return (name, now, f"{significant(r.needed, digits)}{unit}", then)
 

@@ -7,6 +7,7 @@ from typing import Any
 
 from formbuf.advice.criteria_table import CRITERIA
 from formbuf.advice.results import Candidate, LiquidState, Shortlist
+from formbuf.advice.wording import upper_first
 from formbuf.library.rule_tables import ANY, ANY_BUFFER
 from formbuf.output import serialise, words
 from formbuf.output.confidence_page import confidence_blocks, confidence_row
@@ -63,7 +64,7 @@ def blocks(result: Shortlist, top: int | None = None) -> list[Block]:
     found += confidence_blocks(result, shown)
     found += section("Composition", words.composition_grid(result, best))
     found += section(
-        "Rules that fired or stay open, by candidate",
+        "Rules that apply or stay open, by candidate",
         _worst([c for c in shown if c.variant_of is None]),
     )
     found += section("Warnings on the lead and the back-up", _findings(result, best))
@@ -144,17 +145,18 @@ def _without_buffer(result: Shortlist) -> list[Block]:
     arm = next((c for c in result.candidates if c.system.id == "none"), None)
     if arm is None or arm.standing == "screened out":
         return []
-    reason = f": {'; '.join(arm.notes)}" if arm.notes else ""
-    return [Paragraph(f"Without a buffer: {words.standing_words(arm)}{reason}.")]
+    reasons = [f" {upper_first(note)}." for note in arm.notes]
+    standing = words.standing_words(arm)
+    return [Paragraph(f"Without a buffer: {standing}.{''.join(reasons)}")]
 
 
 def _worst(shown: Sequence[Candidate]) -> Grid:
     """Return the worst finding of each candidate and how many rules came out how."""
     columns = (
         Column("System"),
-        number("warn"),
-        number("note"),
-        number("open"),
+        number("Warnings"),
+        number("Notes"),
+        number("Open"),
         Column("Worst finding of its own"),
     )
     rows = []

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any
 
-from formbuf.advice.wording import bare_standing
+from formbuf.advice.wording import bare_standing, criterion_name
 from formbuf.output.figures import decimals, plainly, significant
 from formbuf.output.page import Column, Grid, Items, number
 
@@ -14,18 +14,35 @@ if TYPE_CHECKING:
     from formbuf.product.product_brief import ProductBrief
     from formbuf.product.product_parts import Assumption
 
+__all__ = [
+    "CAUTION",
+    "OUTCOME_WORDS",
+    "SEVERITY_WORDS",
+    "assumptions_grid",
+    "composition_grid",
+    "criterion_name",
+    "finding_words",
+    "is_against",
+    "listed",
+    "made",
+    "ph_words",
+    "standing_words",
+    "title_of",
+    "warnings_items",
+]
+
 CAUTION = (
     "A calculation aid: measured values, compendia, local rules and qualified staff "
     "decide."
 )
 
-#: Where the key itself would not be said so.
-CRITERION_NAMES = {"frozen_drift": "freezing drift"}
-
-
-def criterion_name(key: str) -> str:
-    """Return the name of a criterion as people say it, the report too."""
-    return CRITERION_NAMES.get(key, key.replace("_", " "))
+#: What came of a rule and how heavy it is, in words; the data keep their own.
+OUTCOME_WORDS = {
+    "fired": "applies",
+    "not fired": "does not apply",
+    "not evaluable": "open",
+}
+SEVERITY_WORDS = {"exclude": "exclusion", "warn": "warning", "note": "note"}
 
 
 def title_of(brief: ProductBrief) -> str:
@@ -44,11 +61,11 @@ def standing_words(candidate: Candidate) -> str:
     """Return the standing of a candidate, with its place where it has one.
 
     The product without a buffer stays in view whatever it carries; here it is said
-    whether that is enough.
+    whether that is enough. It takes a place only where its titration was measured.
     """
-    if candidate.system.id == "none" and candidate.standing == "viable":
-        return bare_standing(candidate.carried_share)
     if candidate.rank is None:
+        if candidate.system.id == "none" and candidate.standing != "screened out":
+            return bare_standing(candidate.carried_share, candidate.standing)
         return candidate.standing
     return f"{candidate.standing}, place {candidate.rank}"
 
@@ -69,7 +86,7 @@ def listed(names: Sequence[str]) -> str:
 
 
 def is_against(finding: Any) -> bool:
-    """Whether a finding speaks against its candidate: it fired, or could exclude."""
+    """Whether a finding speaks against its candidate: it applies, or could exclude."""
     if getattr(getattr(finding, "record", None), "favours", False):
         return False
     if finding.outcome == "fired":
@@ -78,11 +95,15 @@ def is_against(finding: Any) -> bool:
 
 
 def finding_words(finding: Any) -> str:
-    """Return one finding as a sentence, with what came of it and what is lacking."""
-    head = finding.severity
+    """Return one finding in a sentence or two, with what came of it and what lacks."""
+    head = SEVERITY_WORDS.get(finding.severity, finding.severity)
     if finding.outcome != "fired":
-        head = f"{head}, {finding.outcome}"
-    text = f"{head}: {finding.text} ({finding.rule}, {finding.basis})"
+        head = f"{head}, {OUTCOME_WORDS.get(finding.outcome, finding.outcome)}"
+    said = finding.text
+    record = getattr(finding, "record", None)
+    if record is not None:
+        said = f"{record.title}. {record.effect}"
+    text = f"{head}: {said} ({finding.rule}, {finding.basis})"
     missing = getattr(finding, "missing", ())
     if missing and finding.outcome == "not evaluable":
         text += f"; not known: {', '.join(missing)}"
@@ -119,7 +140,7 @@ def assumptions_grid(assumptions: Sequence[Assumption]) -> Grid:
     rows = tuple(
         (
             row.key,
-            f"{plainly(row.value)} {row.unit}".strip(),
+            _assumed(row),
             row.basis,
             row.reason,
         )
@@ -132,6 +153,13 @@ def assumptions_grid(assumptions: Sequence[Assumption]) -> Grid:
         Column("Reason", from_width=100),
     )
     return Grid(columns, rows)
+
+
+def _assumed(row: Assumption) -> str:
+    """Return an assumed value with its unit; a pressure to three digits."""
+    if row.unit == "Pa" and isinstance(row.value, float):
+        return f"{significant(row.value)} Pa"
+    return f"{plainly(row.value)} {row.unit}".strip()
 
 
 def warnings_items(warnings: Sequence[str]) -> Items:

@@ -47,6 +47,7 @@ __all__ = [
     "evidence_of",
     "freezing_contents",
     "freezing_temperatures",
+    "lowest_computed_c",
     "where_samples_fall",
 ]
 
@@ -326,14 +327,20 @@ def _unlike(
     return (words,)
 
 
+def lowest_computed_c(path: FreezingPath) -> float:
+    """Return the coldest temperature [C] at which a path has a pH; 0 without any."""
+    return min((p.temperature_c for p in path.points if p.ph is not None), default=0.0)
+
+
 def _computed_reason(paths: tuple[FreezingPath, ...], shift: float | None) -> str:
     crystallising = paths[0]
     onset = crystallising.event("onset")
     if onset is None:
         moved = "" if shift is None else f", which moves pH by {shift:+.1f}"
+        lowest = lowest_computed_c(crystallising)
         return (
-            "no salt reaches its solubility at the temperatures asked for; the liquid "
-            f"only concentrates{moved}"
+            f"no salt reaches its solubility down to {lowest:g} C; the liquid only "
+            f"concentrates{moved}"
         )
     words = "" if shift is None else f", up to {shift:+.1f} pH against unfrozen liquid"
     solid = onset.solid.replace("_", " ")

@@ -257,7 +257,7 @@ def _drug() -> list[Question]:
         Question(
             "drug.isoelectric_point",
             "What is the isoelectric point of the protein?",
-            "Near it a protein is least soluble and buffers little.",
+            "Near it a protein is least soluble and aggregates most readily.",
             readers.number,
             None,
             protein,
@@ -299,15 +299,17 @@ def _rest(library: Library) -> list[Question]:
         Question(
             "loads.acid_mmol_l",
             "How much strong acid must it carry over its shelf life, mmol/L?",
-            "Acid from degradation, carbon dioxide or the closure, best from a "
-            "stability study without buffer. Without an answer a usual load is "
-            "assumed and said so.",
+            "Acid from degradation or the closure, best from a stability study without "
+            "buffer. Carbon dioxide that the pack or the headspace lets in is counted "
+            "for you. Without an answer a usual load is assumed and marked so.",
             readers.number,
         ),
         Question(
             "loads.base_mmol_l",
             "How much strong base must it carry, mmol/L?",
-            "Base from degradation or the drug. Alkali from glass is counted for you.",
+            "Base from degradation or the drug. Alkali from glass is counted for you; if "
+            "your study stood in the final glass, its drift holds that already: set "
+            "container.count_alkali to false in the brief.",
             readers.number,
         ),
         Question(

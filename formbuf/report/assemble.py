@@ -20,7 +20,7 @@ from formbuf.report.content import (
     spans_of,
 )
 from formbuf.report.experiments import experiments
-from formbuf.report.reading import spans
+from formbuf.report.reading import degrees, spans
 from formbuf.report.section_annexes import (
     constants,
     input_record,
@@ -46,6 +46,8 @@ from formbuf.report.story import Story
 
 TITLE = "Rationale for the choice of buffer"
 STATUS = "DRAFT - unsigned"
+#: Stands behind a reference without an author or a title.
+INCOMPLETE = " [reference incomplete: complete before filing]"
 
 
 def document(data: Mapping[str, Any]) -> Document:
@@ -78,7 +80,6 @@ def document(data: Mapping[str, Any]) -> Document:
         control(story),
         limits(story),
         overrides(story),
-        confirm(story),
         batch(story),
         constants(story),
         rule_log(story),
@@ -87,7 +88,10 @@ def document(data: Mapping[str, Any]) -> Document:
         references(),
         reproducibility(story),
     ]
-    sections = numbered([s for s in found if s is not None and not s.is_empty])
+    told = [s for s in found if s is not None and not s.is_empty]
+    annexes = next(i for i, s in enumerate(told) if s.annex)
+    told.insert(annexes, confirm(story, cited(tuple(told))))
+    sections = numbered(told)
     sections = _known_links(sections)
     root = story.root
     return Document(
@@ -176,19 +180,26 @@ def _references(
 ) -> tuple[Reference, ...]:
     """Return the works that are cited, numbered in the order of first mention."""
     known = data["rationale"]["sources"]
+    order = [name for name in cited(sections) if name in known]
+    return tuple(
+        Reference(
+            number,
+            name,
+            degrees(clean(str(known[name]["text"]))),
+            clean(str(known[name]["doi"])),
+            f"/rationale/sources/{name}",
+            INCOMPLETE if known[name]["incomplete"] else "",
+        )
+        for number, name in enumerate(order, start=1)
+    )
+
+
+def cited(sections: tuple[Section, ...]) -> list[str]:
+    """Return the ids of the sources that sections cite, in the order of mention."""
     order: dict[str, None] = {}
     for section in every_section(sections):
         for block in section.blocks:
             for span in spans_of(block):
                 if isinstance(span, Cite):
-                    order.update(dict.fromkeys(s for s in span.sources if s in known))
-    return tuple(
-        Reference(
-            number,
-            name,
-            clean(str(known[name]["text"])),
-            clean(str(known[name]["doi"])),
-            f"/rationale/sources/{name}",
-        )
-        for number, name in enumerate(order, start=1)
-    )
+                    order.update(dict.fromkeys(span.sources))
+    return list(order)

@@ -85,7 +85,7 @@ def states(c: Cursor, slug: str) -> Block:
     notes = [
         spans(
             "Room: strong acid / strong base that moves the pH as far as the window does at "
-            "measurement, in mmol/L."
+            "measurement."
         )
     ]
     if any(s.get("is_extrapolated") for s in c.each("states")):
@@ -101,9 +101,9 @@ def states(c: Cursor, slug: str) -> Block:
             number("pH", 0.7),
             number("Slope, pH/K", 0.9),
             number("Capacity, mmol/L per pH", 1.1),
-            number("of the buffer alone", 0.9),
+            number("Capacity of the buffer alone, mmol/L per pH", 1.1),
             number("Ionic strength, mol/kg", 1.0),
-            number("Room acid / base", 1.3),
+            number("Room acid / base, mmol/L", 1.3),
         ),
         rows,
         notes,

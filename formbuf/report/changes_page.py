@@ -20,7 +20,7 @@ from formbuf.output.page import (
 from formbuf.output.serialise import plain
 from formbuf.report.changes import Change, Changes, Moved, Reason
 from formbuf.report.content import clean
-from formbuf.report.words import CRITERIA, SCREENS, word
+from formbuf.report.words import CRITERIA, OUTCOMES, SCREENS, STANDINGS, word
 
 CHANGES_SCHEMA = "formbuf.changes/1"
 SAME = "The two results say the same."
@@ -105,7 +105,7 @@ def headline(changes: Changes, names: Mapping[str, str]) -> str:
             parts.append(f"The {noun} is the same.")
         else:
             old, new = (
-                clean(names.get(k, str(k))) if k else "nobody"
+                clean(names.get(k, str(k))) if k else "none"
                 for k in (change.old, change.new)
             )
             parts.append(f"The {noun} was {old} and is now {new}.")
@@ -148,7 +148,8 @@ def _moves(changes: Changes) -> Grid:
 def _stand(rank: int | None, standing: str) -> str:
     if not standing:
         return "not considered"
-    return standing if rank is None else f"{rank}, {standing}"
+    shown = word(STANDINGS, standing)
+    return shown if rank is None else f"{rank}, {shown}"
 
 
 def why(moved: Moved) -> str:
@@ -166,7 +167,9 @@ def _reason(r: Reason) -> str:
             return f"now screened out ({shown}): {_shown(r.new)}"
         return f"no longer screened out ({shown})"
     if kind == "rule":
-        old, new = (_shown(x) if x else "not judged" for x in (r.old, r.new))
+        old, new = (
+            word(OUTCOMES, _shown(x)) if x else "not judged" for x in (r.old, r.new)
+        )
         return f"{clean(r.what)}: {old}, now {new}"
     unit = "required" if r.what.startswith("required") else "proposed"
     return f"{unit} {significant(r.old)} to {significant(r.new)} mmol/L"

@@ -11,9 +11,12 @@ from typing import Any
 from formbuf.advice.results import Candidate, Shortlist
 from formbuf.library.records import Quantity
 from formbuf.product.osmotics import OSMOTIC
+from formbuf.report.words import BOOKS, CRITERIA, spoken, word
 
-#: Bases that need confirmation.
-UNCITABLE = ("memory", "practice", "judgement")
+#: Bases that need confirmation; ``stated`` are loads of the author of the brief.
+UNCITABLE = ("memory", "practice", "judgement", "stated")
+#: Answers of the table of monographs as a report writes them.
+_LOOKED_UP = {"unknown": "not looked up", "partial": "partly"}
 
 
 def to_confirm(result: Shortlist, shown: list[Candidate]) -> list[dict[str, Any]]:
@@ -68,7 +71,7 @@ def _assumptions(result: Shortlist) -> Iterator[dict[str, Any]]:
 def _loads(result: Shortlist) -> Iterator[dict[str, Any]]:
     for item in result.loads.items:
         amount = item.acid_mmol_l or item.base_mmol_l
-        yield _row("load", item.name, amount, "mmol/L", item.basis, item.reason)
+        yield _row("load", item.name, amount, "mmol/L", item.told_basis, item.reason)
 
 
 def _species(result: Shortlist, shown: list[Candidate]) -> Iterator[dict[str, Any]]:
@@ -89,7 +92,7 @@ def _species(result: Shortlist, shown: list[Candidate]) -> Iterator[dict[str, An
                     unit = "" if q.unit == "1" else q.unit
                     yield _row("ionization", item, q.value, unit, q.basis, q.locator)
         for a in species.associations:
-            item = f"{a.product}: log10 K of formation"
+            item = f"{spoken(a.product)}: log10 K of formation"
             q = a.log10_k
             yield _row("ionization", item, q.value, "", q.basis, q.locator)
 
@@ -99,8 +102,10 @@ def _precedents(result: Shortlist, shown: list[Candidate]) -> Iterator[dict[str,
     route = result.brief.product.precedent_route
     group = result.brief.route_group
     kind = result.brief.drug.kind_group
-    for name in dict.fromkeys(s for c in shown for s in c.system.species):
-        row = library.precedents.get((name, route))
+    for key in dict.fromkeys(s for c in shown for s in c.system.species):
+        row = library.precedents.get((key, route))
+        known = library.species.get(key)
+        name = spoken(key) if known is None else known.name
         if row is not None:
             yield _row(
                 "precedent",
@@ -117,13 +122,16 @@ def _precedents(result: Shortlist, shown: list[Candidate]) -> Iterator[dict[str,
                 if value is not None:
                     basis = row.concentration_basis
                     yield _row("precedent", f"{name}: {label}", value, "mmol/L", basis)
-            books = ", ".join(f"{b} {v}" for b, v in row.monographs.items())
+            books = ", ".join(
+                f"{word(BOOKS, book)} {_LOOKED_UP.get(answer, answer)}"
+                for book, answer in row.monographs.items()
+            )
             yield _row(
                 "precedent", f"{name}: monographs", books, "", row.monograph_basis
             )
         for entry in library.kind_precedents:
             fits = entry.route_group == group and entry.kind in (kind, "any")
-            if entry.species == name and fits:
+            if entry.species == key and fits:
                 item = f"{name}: level for this kind of product"
                 yield _row("precedent", item, entry.level, "", entry.basis, entry.note)
 
@@ -132,7 +140,7 @@ def _limits(shown: list[Candidate]) -> Iterator[dict[str, Any]]:
     for c in shown:
         for row in c.exposures:
             if row.limit is not None:
-                item = f"{row.substance}: limit"
+                item = f"{spoken(row.substance)}: limit"
                 yield _row(
                     "dose limit", item, row.limit, row.limit_unit, row.limit_basis
                 )
@@ -180,7 +188,7 @@ def _volumes(result: Shortlist) -> Iterator[dict[str, Any]]:
     for name in [*wanted, "default_salt"]:
         if name in volumes:
             q = volumes[name].volume_ml_g
-            item = f"{name}: partial specific volume"
+            item = f"{spoken(name)}: partial specific volume"
             yield _row("volume", item, q.value, q.unit, q.basis, q.locator)
 
 
@@ -193,7 +201,7 @@ def _osmotic(result: Shortlist, shown: list[Candidate]) -> Iterator[dict[str, An
         if row.text("neutral") in contents:
             yield _row(
                 "osmolality",
-                f"{row.text('neutral')}: osmotic coefficient",
+                f"{spoken(row.text('neutral'))}: osmotic coefficient",
                 row.figure("coefficient_kg_mol"),
                 "kg/mol",
                 row.text("basis"),
@@ -205,11 +213,13 @@ def _ranking(result: Shortlist) -> Iterator[dict[str, Any]]:
     basis = result.settings.basis
     why = "set by the builders; a brief may replace them under [ranking]"
     for name, weight in result.settings.weights.items():
-        yield _row("ranking", f"weight of {name}", weight, "", basis, why)
+        yield _row(
+            "ranking", f"weight of {word(CRITERIA, name)}", weight, "", basis, why
+        )
     for name, anchors in result.settings.anchors.items():
-        item = f"anchor of {name}: full desirability at"
+        item = f"anchor of {word(CRITERIA, name)}: full desirability at"
         unit = "" if anchors.unit == "1" else anchors.unit
         yield _row("ranking", item, anchors.full, unit, basis, why)
         if anchors.floor is not None:
-            item = f"anchor of {name}: floor at"
+            item = f"anchor of {word(CRITERIA, name)}: floor at"
             yield _row("ranking", item, anchors.floor, unit, basis, why)

@@ -226,13 +226,14 @@ class OpenPoint:
 
 @dataclass(frozen=True, slots=True)
 class Reference:
-    """One entry of the reference list."""
+    """One entry of the reference list; ``remark`` stands behind it."""
 
     number: int
     source: str
     text: str
     doi: str
     path: str
+    remark: str = ""
 
 
 @dataclass(frozen=True, slots=True)

@@ -26,6 +26,7 @@ from formbuf.report.changes import compare
 from formbuf.report.confirmation import to_confirm
 from formbuf.report.curves import curves
 from formbuf.report.foundations import constants
+from formbuf.report.origins import stated_keys
 from formbuf.report.room import room
 from formbuf.report.sensitivity import finalists, nearest_misses, sensitivity
 
@@ -60,12 +61,15 @@ class Origin:
     command : str
     stamp : str
         Date and time, only where asked for.
+    stated : tuple of str
+        Keys that the brief's file states.
     """
 
     brief_name: str = ""
     brief_sha256: str = ""
     command: str = ""
     stamp: str = ""
+    stated: tuple[str, ...] = ()
 
 
 def origin_of(
@@ -79,13 +83,15 @@ def origin_of(
         The file cannot be read.
     """
     try:
-        digest = hashlib.sha256(Path(path).read_bytes()).hexdigest()
+        content = Path(path).read_bytes()
     except (OSError, ValueError) as error:
         msg = f"{path}: the brief cannot be read"
         raise InputError(msg) from error
+    digest = hashlib.sha256(content).hexdigest()
+    stated = stated_keys(content.decode("utf-8", errors="replace"))
     name = Path(path).name
     drawn = "" if draws is None else f" --draws {draws} --seed {seed}"
-    return Origin(name, digest, f"formbuf rationale {name}{drawn}", stamp)
+    return Origin(name, digest, f"formbuf rationale {name}{drawn}", stamp, stated)
 
 
 def rationale_dict(
@@ -106,6 +112,7 @@ def rationale_dict(
     shown = finalists(result)
     data = shortlist_dict(result)
     data["schema"] = RATIONALE_SCHEMA
+    sheet = batch_data(result, shown)
     block = {
         "origin": plain(origin or Origin()),
         "seed": None if result.confidence is None else result.confidence.seed,
@@ -116,7 +123,7 @@ def rationale_dict(
         },
         "finalists": [c.key for c in shown],
         "nearest_misses": [] if shown else [c.key for c in nearest_misses(result)],
-        "names": names(result),
+        "names": names(result, sheet),
         "precedents": precedents(result),
         "kind_counts": kind_applies(result.library, result.brief),
         "settings": plain(result.settings.table),
@@ -125,7 +132,7 @@ def rationale_dict(
         "sensitivity": sensitivity(result),
         "constants": constants(result, shown),
         "curves": curves(result, with_none(result, shown)),
-        "batch_sheet": batch_data(result, shown),
+        "batch_sheet": sheet,
         "to_confirm": to_confirm(result, shown),
     }
     if old is not None:
@@ -141,8 +148,8 @@ def with_none(result: Shortlist, shown: list[Candidate]) -> list[Candidate]:
     return shown if none is None or none in shown else [*shown, none]
 
 
-def names(result: Shortlist) -> dict[str, Any]:
-    """Return names of species, materials and systems that occur."""
+def names(result: Shortlist, sheet: Mapping[str, Any] | None = None) -> dict[str, Any]:
+    """Return names of species and materials that occur, on the batch sheet too."""
     library = result.library
     materials: dict[str, None] = {}
     species: dict[str, None] = {}
@@ -160,6 +167,11 @@ def names(result: Shortlist) -> dict[str, Any]:
         materials.update(dict.fromkeys(own.materials))
     if result.brief.tonicity.agent:
         materials[result.brief.tonicity.agent] = None
+    for way in (sheet or {}).get("ways", ()):
+        materials.update(
+            (e["material"], None) for e in way["weighing_errors_1_percent"]
+        )
+        materials.update((w["weighed"], None) for w in way["wrong_hydrates"])
     found: dict[str, Any] = {"materials": {}, "components": {}, "solids": {}}
     if any(c.frozen is not None for c in result.candidates):
         freezing = load_freezing_data(library)
@@ -203,7 +215,7 @@ def precedents(result: Shortlist) -> dict[str, Any]:
 
 
 def rules(result: Shortlist) -> dict[str, Any]:
-    """Return every rule that fired or could not be judged, as the tables hold it."""
+    """Return every rule that applies or could not be judged, as the tables hold it."""
     found: dict[str, Any] = {}
     missing: dict[str, dict[str, None]] = {}
     for findings in [result.product_findings, *(c.findings for c in result.candidates)]:
@@ -261,6 +273,7 @@ def sources(result: Shortlist, data: dict[str, Any]) -> dict[str, Any]:
                 "doi": source.doi,
                 "read_in": source.locator_note,
                 "note": source.note,
+                "incomplete": not (source.authors and source.title),
                 "overlay": source.overlay,
             }
     return entries

@@ -7,6 +7,7 @@ section never types a number.
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Any, TypeAlias
@@ -27,8 +28,14 @@ from formbuf.report.content import (
 Piece: TypeAlias = "str | Span | Spans | None"
 Key: TypeAlias = "str | int"
 
+#: Places whose texts stand as the user wrote them.
+_OF_THE_USER = ("/brief", "/rationale/origin")
 #: What stands where there is no value.
 NOTHING: Spans = (Text("-"),)
+#: A temperature as the tables and findings write it: 5 C, -40 C, 2-8 C, per C.
+_DEGREES = re.compile(r"(\d|\b[Pp]er) C(?![\w-])")
+_PER_DEGREE = re.compile(r"(?<=\d)/C(?![\w-])")
+_BELOW_ZERO = re.compile(rf"(?<![\w.)])-(?=\d+(?:\.\d+)?{NO_BREAK}°C)")
 _RAISED = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 
 
@@ -142,6 +149,8 @@ class Cursor:
         """Return a text of the result; a dash where it is empty."""
         place = self.at(*keys)
         shown = clean(str(place.data)) if place.data not in (None, "") else ""
+        if not place.path.startswith(_OF_THE_USER):
+            shown = degrees(shown)
         return Quote(shown, place.path) if shown else Text("-")
 
 
@@ -159,6 +168,18 @@ def typeset(digits: str) -> str:
         return shown
     power = str(int(exponent)).translate(_RAISED)
     return f"{shown}{NO_BREAK}×{NO_BREAK}10{power}"
+
+
+def degrees(text: str) -> str:
+    r"""Return a text with its temperatures as a report writes them.
+
+    Examples
+    --------
+    >>> degrees("3 at -40 C, 4.5 to 2-8 C, -0.02 per C"), degrees("vitamin C")
+    ('3 at −40\xa0°C, 4.5 to 2-8\xa0°C, -0.02 per\xa0°C', 'vitamin C')
+    """
+    told = _PER_DEGREE.sub("/°C", _DEGREES.sub(f"\\1{NO_BREAK}°C", text))
+    return _BELOW_ZERO.sub("\u2212", told)
 
 
 def escape(key: str) -> str:
@@ -276,7 +297,7 @@ def capital(text: str) -> str:
 
 def sentence(place: Cursor) -> Spans:
     """Return a remark of the result as a sentence: a capital first, a stop last."""
-    text = clean(str(place.data or ""))
+    text = degrees(clean(str(place.data or "")))
     if not text:
         return ()
     stop = "" if text.endswith((".", "!", "?")) else "."

@@ -13,7 +13,8 @@ from formbuf.report.content import (
     Section,
     Spans,
 )
-from formbuf.report.reading import Cursor, cite, spans
+from formbuf.report.origins import INTERNAL, assumed_keys, origin
+from formbuf.report.reading import Cursor, cite, link, spans
 from formbuf.report.story import Story, number, source_cell, table
 
 
@@ -187,16 +188,21 @@ def _constant(name: Spans, entry: Cursor) -> tuple[Spans, ...]:
 
 def input_record(story: Story) -> Section:
     """Return every key of the completed brief."""
-    assumed = {str(a.get("key")) for a in story.root.each("assumptions")}
-    rows = []
-    for key, leaf in _leaves(story.brief):
-        rows.append(
-            (
-                spans(key),
-                spans(leaf.plain()),
-                spans("assumed" if key in assumed else ""),
-            )
+    assumed = assumed_keys(story)
+    stated = frozenset(story.more.get("origin", "stated") or ())
+    rows = [
+        (spans(key), spans(leaf.plain()), spans(origin(key, leaf, assumed, stated)))
+        for key, leaf in _leaves(story.brief)
+        if key not in INTERNAL
+    ]
+    notes = [
+        spans(
+            "Assumed values stand with their reasons in ",
+            link("assumed"),
+            ". Computed: follows from other keys. Preset: the program's own value where "
+            "the brief says nothing.",
         )
+    ]
     return Section(
         "input",
         spans("Input record"),
@@ -209,7 +215,8 @@ def input_record(story: Story) -> Section:
                     Column("Value", width=3.6),
                     Column("Origin", width=0.8),
                 ),
-                [(k, v, o if o else spans("-")) for k, v, o in rows],
+                rows,
+                notes,
             ),
         ),
         annex=True,

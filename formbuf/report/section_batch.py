@@ -9,11 +9,13 @@ from formbuf.report.content import (
     Note,
     Paragraph,
     Section,
+    Span,
     Spans,
     Table,
 )
 from formbuf.report.reading import Cursor, sentence, spans
 from formbuf.report.story import C, Story, number, table
+from formbuf.report.words import STORAGE, word
 
 #: Stands in a field to be filled in by hand.
 BLANK = "\u2026\u2026\u2026"
@@ -47,13 +49,15 @@ def batch(story: Story) -> Section | None:
             ". Lots, weights and signatures are filled in by hand.",
         )
     )
-    ways = tuple(_way(way, index) for index, way in enumerate(place.each("ways")))
+    ways = tuple(
+        _way(story, way, index) for index, way in enumerate(place.each("ways"))
+    )
     notes = [sentence(note) for note in place.each("warnings")]
     blocks: list[Block] = [head, *(Note(note) for note in notes)]
     return Section("batch-sheet", title, tuple(blocks), ways, annex=True)
 
 
-def _way(way: Cursor, index: int) -> Section:
+def _way(story: Story, way: Cursor, index: int) -> Section:
     key = f"batch-{index + 1}"
     blocks: list[Block] = [
         _weigh(way, key),
@@ -68,10 +72,10 @@ def _way(way: Cursor, index: int) -> Section:
         ),
         Items(tuple(sentence(step) for step in way.each("steps"))),
         _readings(way, key),
-        _mistakes(way, key),
+        _mistakes(story, way, key),
     ]
     if way.get("wrong_hydrates"):
-        blocks.append(_hydrates(way, key))
+        blocks.append(_hydrates(story, way, key))
     blocks.append(Paragraph(_allowance(way)))
     blocks += [Note(sentence(caution)) for caution in way.each("cautions")]
     return Section(
@@ -106,7 +110,7 @@ def _readings(way: Cursor, key: str) -> Table:
     rows = [
         (
             spans(r.plain("temperature_c")),
-            spans(r.plain("kinds")),
+            spans(", ".join(word(STORAGE, k) for k in r.get("kinds") or ())),
             spans(r.value("ph", places=SMALL_PLACES)),
             spans("as made"),
         )
@@ -115,7 +119,7 @@ def _readings(way: Cursor, key: str) -> Table:
     rows += [
         (
             spans(r.plain("prepare_c")),
-            spans("prepare"),
+            spans(word(STORAGE, "prepare")),
             spans(r.value("meter_at_prepare", places=SMALL_PLACES)),
             spans("to have the target at ", r.plain("storage_c", unit=C)),
         )
@@ -134,10 +138,10 @@ def _readings(way: Cursor, key: str) -> Table:
     )
 
 
-def _mistakes(way: Cursor, key: str) -> Table:
+def _mistakes(story: Story, way: Cursor, key: str) -> Table:
     rows = [
         (
-            spans("1 % more ", e.quote("material")),
+            spans("1 % more ", _weighed(story, way, e.text("material"))),
             spans(e.value("d_ph", places=SMALL_PLACES, sign=True)),
             spans(e.value("d_osmolality_mosm_kg", places=1, sign=True)),
         )
@@ -145,7 +149,7 @@ def _mistakes(way: Cursor, key: str) -> Table:
     ]
     for text, name in (
         ("solution 2 K warmer than taken", "warmer_solution_2_k_d_ph"),
-        ("meter compensation 2 K too high", "compensation_2_k_d_ph"),
+        ("meter compensation set 2 K too high", "compensation_2_k_d_ph"),
     ):
         rows.append(
             (
@@ -162,11 +166,17 @@ def _mistakes(way: Cursor, key: str) -> Table:
     )
 
 
-def _hydrates(way: Cursor, key: str) -> Table:
+def _weighed(story: Story, way: Cursor, key: str) -> Span:
+    """Return the name of what is weighed of a material."""
+    lines = [line for line in way.each("lines") if line.get("material") == key]
+    return lines[0].quote("grade_name") if lines else story.material(key)
+
+
+def _hydrates(story: Story, way: Cursor, key: str) -> Table:
     rows = [
         (
-            spans(w.quote("weighed")),
-            spans(w.quote("meant")),
+            spans(story.material(w.text("weighed"))),
+            spans(story.material(w.text("meant"))),
             spans(w.value("ph", places=2)),
             spans(w.value("d_ph", places=2, sign=True)),
         )

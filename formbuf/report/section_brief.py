@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable
 
 from formbuf.report.content import Block, Column, Items, Paragraph, Section, Spans
+from formbuf.report.origins import assumed_keys
 from formbuf.report.reading import (
     Cursor,
     link,
@@ -29,7 +30,7 @@ Row = tuple[str, Spans, str]
 
 def requirements(story: Story) -> Section:
     """Return the brief and every value that was assumed for it."""
-    assumed = {str(a.get("key")) for a in story.root.each("assumptions")}
+    assumed = assumed_keys(story)
     rows = [
         (
             spans(label),
@@ -147,7 +148,7 @@ def _ph_rows(b: Cursor) -> Iterable[Row]:
 
 
 def _storage_rows(b: Cursor) -> Iterable[Row]:
-    for entry in b.each("storage"):
+    for position, entry in enumerate(b.each("storage"), start=1):
         kind = entry.text("kind")
         state = entry.text("state")
         hours = entry.plain("hours", unit="h") if entry.get("hours") else None
@@ -159,7 +160,7 @@ def _storage_rows(b: Cursor) -> Iterable[Row]:
                 ", for " if hours else None,
                 hours,
             ),
-            "storage.body_temperature_c" if kind == "body" else "storage.temperature_c",
+            f"storage[{position}].temperature_c",
         )
 
 
@@ -203,7 +204,7 @@ def _container_rows(b: Cursor) -> Iterable[Row]:
     )
     if permeable is not None:
         yield (
-            "Wall",
+            "Container wall",
             spans("lets gas through" if permeable else "keeps gas in and out"),
             "container.gas_permeable",
         )
@@ -282,7 +283,9 @@ def _assumed(story: Story) -> Section:
         (
             spans(a.quote("key")),
             spans(
-                a.plain("value"),
+                a.plain("value")
+                if a.number("value") is None
+                else a.value("value", trim=True),
                 " " if a.get("unit") else None,
                 unit_words(a.text("unit")),
             ),

@@ -14,7 +14,7 @@ from formbuf.report.story import (
     sources_in,
     table,
 )
-from formbuf.report.words import BOOKS, SCREENS, counted, word
+from formbuf.report.words import BOOKS, SCREENS, STANDINGS, counted, word
 
 _YES = {"yes": "yes", "no": "no", "partial": "partly", "unknown": "?"}
 
@@ -66,9 +66,10 @@ def _capital(counts: Cursor, dropped: int) -> Spans:
 
 
 def _standing(c: Cursor) -> str:
-    if is_none(c) and c.text("standing") == "viable":
-        return bare_standing(c.number("carried_share"))
-    return c.text("standing")
+    standing = c.text("standing")
+    if is_none(c) and c.get("rank") is None and standing != "screened out":
+        return bare_standing(c.number("carried_share"), standing)
+    return word(STANDINGS, standing)
 
 
 def _list(story: Story) -> Block:
@@ -189,7 +190,7 @@ def _exclusions(story: Story) -> Section:
         for position, screen in enumerate(c.each("screened_out_by")):
             rows.append(
                 (
-                    spans(named(c)) if position == 0 else spans("and"),
+                    spans(named(c)) if position == 0 else spans("– further reason"),
                     _screen_name(story, screen),
                     spans(screen.quote("text")),
                     source_cell(

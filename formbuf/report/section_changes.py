@@ -2,12 +2,10 @@
 
 from __future__ import annotations
 
-from typing import Any
-
 from formbuf.report.content import Block, Column, Paragraph, Section, Spans
 from formbuf.report.reading import Cursor, parted, spans
 from formbuf.report.story import Story, number, table
-from formbuf.report.words import CRITERIA, SCREENS, word
+from formbuf.report.words import CRITERIA, OUTCOMES, SCREENS, STANDINGS, word
 
 _AMOUNTS = {
     "required_mmol_l": "required concentration, mmol/L",
@@ -81,8 +79,8 @@ def _places(story: Story, place: Cursor) -> Spans:
             words.append(spans(f"The {noun} is the same."))
             continue
         old, new = change.get("old"), change.get("new")
-        before = story.name_of(old) if old else spans("nobody")
-        after = story.name_of(new) if new else spans("nobody")
+        before = story.name_of(old) if old else spans("none")
+        after = story.name_of(new) if new else spans("none")
         words.append(spans(f"The {noun} was ", before, " and is now ", after, "."))
     return parted(words, " ")
 
@@ -117,7 +115,7 @@ def _moved(place: Cursor) -> Block:
 
 
 def _stand(m: Cursor, which: str) -> Spans:
-    standing = m.text(f"{which}_standing")
+    standing = word(STANDINGS, m.text(f"{which}_standing"))
     if not standing:
         return spans("not considered")
     if m.get(f"{which}_rank") is None:
@@ -153,5 +151,5 @@ def _reason(r: Cursor) -> Spans:
     )
 
 
-def _outcome(r: Cursor, key: str) -> Any:
-    return r.quote(key) if r.get(key) else "not judged"
+def _outcome(r: Cursor, key: str) -> str:
+    return word(OUTCOMES, r.text(key)) if r.get(key) else "not judged"

@@ -10,15 +10,15 @@ from formbuf.report.words import SEVERITIES, word
 
 
 def compatibility(story: Story) -> Section:
-    """Return the findings that fired and those that could not be judged."""
+    """Return the findings that apply and those that could not be judged."""
     blocks: list[Block] = [
         Paragraph(
             spans(
-                "Each rule tests facts of the product and of the candidate. It fires, does "
-                "not fire, or cannot be judged because a fact is missing. An exclusion "
+                "Each rule tests facts of the product and of the candidate. It applies, does "
+                "not apply, or stays open because a fact is missing. An exclusion "
                 "screens a candidate out; a warning or a note lowers its compatibility by the "
-                "worst finding of all topics. Findings that hold for every candidate rank "
-                "nobody and stand apart. The full log is ",
+                "worst finding of all topics. Findings that hold for every candidate do not "
+                "change the order and stand apart. The full log is ",
                 link("rules"),
                 ".",
             )
@@ -32,7 +32,7 @@ def compatibility(story: Story) -> Section:
     blocks.append(
         Note(
             spans(
-                "A rule that does not fire is no proof of compatibility; a much-studied "
+                "A rule that does not apply is no proof of compatibility; a much-studied "
                 "buffer has more rules than a little-known one."
             )
         )
@@ -83,7 +83,7 @@ def _candidate(story: Story, c: Cursor, label: str) -> Section:
         blocks = [
             Paragraph(
                 spans(
-                    f"No rule fires for the {label}",
+                    f"No rule applies to the {label}",
                     " besides those of the product." if common else ".",
                 )
             )

@@ -113,6 +113,18 @@ def _titration(d: Cursor, kind: str) -> list[Block]:
         ]
     if kind == "none" or d.get("pka"):
         return []
+    known = _estimated_from(d)
+    if known:
+        return [
+            Note(
+                spans(
+                    f"What the drug itself buffers is estimated from {known}; a titration "
+                    "of the product without buffer should confirm it (",
+                    link("need"),
+                    ").",
+                )
+            )
+        ]
     return [
         Note(
             spans(
@@ -121,3 +133,21 @@ def _titration(d: Cursor, kind: str) -> list[Block]:
             )
         )
     ]
+
+
+def _estimated_from(d: Cursor) -> str:
+    """Say what tells how the drug binds protons, the best first; empty if nothing."""
+    if d.get("titration_mmol_g") and d.get("concentration_mg_ml"):
+        return "its titration per gram"
+    if not d.get("concentration_mmol_l"):
+        return ""
+    if d.get("residues"):
+        return "its ionisable groups"
+    if d.get("net_charge") is not None:
+        return "its isoelectric point and net charge"
+    return ""
+
+
+def buffers_by_estimate(d: Cursor) -> bool:
+    """Whether what a protein buffers is known, from whatever the brief says of it."""
+    return bool(d.get("titration") or d.get("pka") or _estimated_from(d))

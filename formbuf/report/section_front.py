@@ -191,7 +191,12 @@ def _place(story: Story, lead: Cursor) -> Spans:
     if chance.number() is not None:
         share = chance.value(percent=True, places=0)
         place = spans(
-            place, " It leads in ", share, " of the draws (", link("confidence"), ")."
+            place,
+            " The lead comes first in ",
+            share,
+            " of the draws (",
+            link("confidence"),
+            ").",
         )
     tied = list(lead.get("tied_with") or ())
     second = spans(
@@ -205,8 +210,9 @@ def _place(story: Story, lead: Cursor) -> Spans:
         return spans(
             place,
             second,
-            " The lead is tied with nobody: within the uncertainty of the inputs its "
-            "order with any other would flip in less than a quarter of cases.",
+            " The lead is tied with no other candidate: within the uncertainty of the "
+            "inputs its order with any other would flip in less than a quarter of "
+            "cases.",
         )
     pronoun = "it" if len(tied) == 1 else "them"
     return spans(
@@ -243,6 +249,7 @@ def _limits(story: Story, lead: Cursor) -> list[Block]:
                 spans("By no criterion does the lead fall short of full desirability.")
             )
         )
+    blocks += _margin(story, lead)
     if story.root.get("loads", "all_default"):
         blocks.append(
             Note(
@@ -255,6 +262,30 @@ def _limits(story: Story, lead: Cursor) -> list[Block]:
             )
         )
     return blocks
+
+
+def _margin(story: Story, lead: Cursor) -> list[Block]:
+    """Say so where the product carries the loads without the buffer of the lead."""
+    bare = next((c for c in story.candidates if is_none(c)), None)
+    share = None if bare is None else bare.number("carried_share")
+    if bare is None or share is None or share < 1.0:
+        return []
+    if is_none(lead) or bare.get("rank") is not None:
+        return []
+    measured = story.brief.get("drug", "titration")
+    return [
+        Paragraph(
+            spans(
+                "By its measured titration" if measured else "By calculation",
+                " the product carries ",
+                bare.value("carried_share", digits=2),
+                " times the load budget without an added buffer; the buffer is then a "
+                "margin (",
+                link("need"),
+                ").",
+            )
+        )
+    ]
 
 
 def _nobody(story: Story) -> list[Block]:

@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from formbuf.report.content import Block, Column, Items, Paragraph, Section, Spans
-from formbuf.report.reading import Cursor, cite, joined, spans
+from formbuf.report.reading import Cursor, cite, joined, link, spans
+from formbuf.report.section_drug import buffers_by_estimate
 from formbuf.report.story import Story, named, table
 from formbuf.report.words import unit_words
 
@@ -41,8 +44,15 @@ def limits(story: Story) -> Section:
     if kind in ("antibody", "fusion_protein", "protein"):
         items.append(
             spans(
-                "What the protein binds, excludes or buffers is not calculated; only its "
-                "volume counts."
+                "What the protein binds or excludes is not calculated; what it buffers is "
+                "an estimate (",
+                link("need"),
+                ").",
+            )
+            if buffers_by_estimate(story.brief.at("drug"))
+            else spans(
+                "What the protein binds or excludes is not calculated, and what it buffers "
+                "is not known; only its volume counts."
             )
         )
     if story.is_cold:
@@ -115,13 +125,20 @@ def _met(story: Story, o: Cursor) -> Spans:
         if aside or found:
             who.append(c)
     if not who:
-        return spans("none: the rule does not fire")
+        return spans("none: the rule does not apply")
     names = joined([spans(named(c)) for c in who])
     return spans("set aside for ", names)
 
 
-def confirm(story: Story) -> Section:
-    """Return every value of basis memory, practice or judgement."""
+def confirm(story: Story, cited: Sequence[str] = ()) -> Section:
+    """Return every value that cannot be cited as it stands, and incomplete references.
+
+    Parameters
+    ----------
+    story : Story
+    cited : sequence of str
+        Ids of the sources that the other sections cite.
+    """
     rows = []
     for entry in story.more.each("to_confirm"):
         unit = entry.text("unit")
@@ -129,7 +146,10 @@ def confirm(story: Story) -> Section:
             (
                 spans(entry.quote("item")),
                 spans(
-                    entry.plain("value"),
+                    entry.value("value", trim=True)
+                    if entry.text("group") == "assumed for the brief"
+                    and entry.number("value") is not None
+                    else entry.plain("value"),
                     " " if unit else None,
                     unit_words(unit),
                 ),
@@ -145,12 +165,14 @@ def confirm(story: Story) -> Section:
                 spans(
                     "These values cannot be cited as they stand. Memory: recalled, not "
                     "looked up. Practice: custom of the trade without a source. Judgement: "
-                    "set by the builders of the tables or by the author of the brief."
+                    "set by the builders of the tables. Stated: from the author of the brief."
                 )
             ),
             table(
                 "t-confirm",
-                spans("Values of basis memory, practice or judgement"),
+                spans(
+                    "Values of basis memory, practice or judgement, and loads as stated"
+                ),
                 (
                     Column("Item", width=2.6),
                     Column("Value", width=1.4),
@@ -161,5 +183,25 @@ def confirm(story: Story) -> Section:
             )
             if rows
             else Paragraph(spans("There are none.")),
+            *_incomplete(story, cited),
         ),
     )
+
+
+def _incomplete(story: Story, cited: Sequence[str]) -> list[Block]:
+    """Say which references lack an author or a title."""
+    known = story.more.at("sources")
+    found = [name for name in cited if known.get(name, "incomplete")]
+    if not found:
+        return []
+    return [
+        Paragraph(
+            spans(
+                "These entries of ",
+                link("references"),
+                " lack an author or a title and have to be completed before filing:",
+                cite(found),
+                ".",
+            )
+        )
+    ]

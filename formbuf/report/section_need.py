@@ -52,7 +52,7 @@ def _budget(story: Story) -> Block:
             spans(acid.quote("reason")),
             source_cell(
                 acid.get("source"),
-                f"{acid.text('basis')}{' (default)' if acid.get('is_default') else ''}",
+                _basis(acid),
             ),
         )
         for acid, base, both in _told_once(loads.each("items"))
@@ -78,6 +78,14 @@ def _budget(story: Story) -> Block:
         ),
         rows,
     )
+
+
+def _basis(item: Cursor) -> str:
+    """Say what a load rests on; what the author of the brief states is no judgement."""
+    if item.get("is_default"):
+        return f"{item.text('basis')} (default)"
+    basis = item.text("basis")
+    return "stated" if basis == "judgement" else basis
 
 
 def _told_once(items: Sequence[Cursor]) -> list[tuple[Cursor, Cursor, bool]]:
@@ -111,8 +119,11 @@ def _defaults(story: Story) -> list[Block]:
         OpenPoint(
             "loads",
             spans(
-                "Loads are defaults or screening bounds, and the concentration of every "
-                "candidate is in proportion to them (",
+                "Loads are defaults or screening bounds"
+                if all(item.get("is_default") for item in items)
+                else "Some of the loads are defaults or screening bounds",
+                ", and the concentration of every candidate is in proportion to the "
+                "budget (",
                 link("need"),
                 ").",
             ),
@@ -147,17 +158,14 @@ def _without(story: Story) -> list[Block]:
     standing = arm.text("standing")
     notes = [sentence(arm.at("notes", i)) for i in range(len(arm.get("notes") or ()))]
     first = notes[0] if notes else spans("")
-    words = spans("Arm without an added buffer. ", first)
+    words = spans("Product without an added buffer. ", first)
     share = arm.number("carried_share")
     if share is not None and share > 1.0:
         words = spans(
             words,
-            " It carries ",
-            arm.value("carried_share", digits=2),
-            " times the budget by itself",
-            ": an added buffer is not needed for the loads."
+            " An added buffer is not needed for the loads."
             if arm.get("rank") == 1
-            else "; an added buffer is a margin, not a need, as far as the loads go.",
+            else " An added buffer is a margin, not a need, as far as the loads go.",
         )
     state = state_of(arm, "measure")
     if state is not None:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Collection
+
 from formbuf.report.content import Column, Items, Paragraph, Section, Spans
 from formbuf.report.reading import Cursor, joined, link, spans
 from formbuf.report.story import C, Story, is_none, state_of, table
@@ -49,7 +51,7 @@ def _rules(lead: Cursor, topics: tuple[str, ...], what: str) -> list[Spans]:
         return []
     names = joined([spans(f.quote("rule")) for f in found])
     noun = "rules" if len(found) > 1 else "rule"
-    verb = "fire" if len(found) > 1 else "fires"
+    verb = "apply" if len(found) > 1 else "applies"
     return [spans(f"{what}: {noun} ", names, f" {verb} (", link("compatibility"), ").")]
 
 
@@ -81,9 +83,18 @@ def _making(story: Story, lead: Cursor) -> list[Spans]:
             spans(
                 "Weigh the hydrate that the sheet names (",
                 link("design-lead"),
-                "); another "
-                "hydrate changes the mass. Small corrections are made with the titrant of "
-                "the system before the tonicity agent and the final volume.",
+                "); another hydrate changes the mass.",
+            )
+        )
+    if story.more.get("batch_sheet") is not None:
+        sheet = story.more.at("batch_sheet", "ways", 0, "allowance")
+        items.append(
+            spans(
+                "Small corrections of the pH are made at ",
+                sheet.plain("make_up_first_percent"),
+                " % of the volume, within the adjustment allowance of ",
+                link("batch-sheet"),
+                "; they count in the osmolality.",
             )
         )
     items += [
@@ -194,16 +205,25 @@ def control(story: Story) -> Section | None:
 def _control_rows(story: Story, lead: Cursor) -> list[tuple[Spans, ...]]:
     ph, t = story.brief.at("ph"), story.brief.at("tonicity")
     at = ph.plain("measure_temperature_c", unit=C)
+    assumed = {a.text("key") for a in story.root.each("assumptions")}
     rows: list[tuple[Spans, ...]] = [
         (
             spans("pH at release"),
             spans(ph.plain("target"), " ± ", ph.plain("release_tolerance"), " at ", at),
-            spans("brief; batch experience not yet entered"),
+            spans(
+                "brief, tolerance assumed"
+                if "ph.release_tolerance" in assumed
+                else "brief",
+                "; batch experience not yet entered",
+            ),
         ),
         (
             spans("pH over shelf life"),
             spans(ph.plain("low"), " to ", ph.plain("high"), " at ", at),
-            spans("brief; stability study not yet entered"),
+            spans(
+                _set_by(assumed, "ph.low", "ph.high"),
+                "; stability study not yet entered",
+            ),
         ),
     ]
     if t.get("low_mosm_kg") is not None and t.get("high_mosm_kg") is not None:
@@ -212,7 +232,7 @@ def _control_rows(story: Story, lead: Cursor) -> list[tuple[Spans, ...]]:
             (
                 spans("Osmolality"),
                 spans(t.plain("low_mosm_kg"), " to ", high),
-                spans("brief; tighten to what batches show"),
+                _osmolality_support(assumed),
             )
         )
     if not is_none(lead):
@@ -228,3 +248,24 @@ def _control_rows(story: Story, lead: Cursor) -> list[tuple[Spans, ...]]:
             )
         )
     return rows
+
+
+def _set_by(assumed: Collection[str], *keys: str) -> str:
+    """Say whether the limits under some keys are those of the brief."""
+    taken = [key for key in keys if key in assumed]
+    if not taken:
+        return "brief"
+    return "assumed" if len(taken) == len(keys) else "brief, partly assumed"
+
+
+def _osmolality_support(assumed: Collection[str]) -> Spans:
+    """Say where the limits of osmolality come from."""
+    told = _set_by(assumed, "tonicity.low_mosm_kg", "tonicity.high_mosm_kg")
+    if told == "brief":
+        return spans("brief; tighten to what batches show")
+    return spans(
+        told,
+        ", the range that the route bears (",
+        link("assumed"),
+        "); set limits from batches",
+    )

@@ -58,7 +58,8 @@ def _method(story: Story) -> Spans:
         " and one, by a straight or logarithmic line between two anchors",
         cite(("harrington_1965", "derringer_1980")),
         ". The overall desirability is their weighted geometric mean; a criterion that does "
-        "not apply to the brief counts for nobody. Zero belongs to the screens alone. "
+        "not apply to the brief is left out for every candidate. Zero belongs to the "
+        "screens alone. "
         "Weights and anchors are those of the tables unless the brief sets its own.",
     )
 

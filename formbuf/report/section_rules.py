@@ -1,4 +1,4 @@
-"""The rule log: for whom each rule fired, and for whom it stays open."""
+"""The rule log: to whom each rule applies, and for whom it stays open."""
 
 from __future__ import annotations
 
@@ -7,12 +7,12 @@ from formbuf.report.reading import Cursor, joined, parted, spans
 from formbuf.report.story import Story, label_of, named, table
 from formbuf.report.words import SEVERITIES, word
 
-#: For each rule: a finding of it, who it fired for, who it stays open for.
+#: For each rule: a finding of it, who it applies to, who it stays open for.
 Log = dict[str, tuple[Cursor, list[Cursor], list[Cursor]]]
 
 
 def rule_log(story: Story) -> Section:
-    """Return for each rule whom it fires for and for whom it stays open."""
+    """Return for each rule whom it applies to and for whom it stays open."""
     log: Log = {}
     quiet: dict[str, Cursor] = {}
     for c in story.candidates:
@@ -26,7 +26,7 @@ def rule_log(story: Story) -> Section:
     silent = [quiet[name] for name in sorted(quiet) if name not in log]
     if silent:
         names = joined([spans(f.quote("rule")) for f in silent])
-        words = spans("Judged and not fired for any candidate: ", names, ".")
+        words = spans("Judged, and applying to no candidate: ", names, ".")
         blocks.append(Paragraph(words))
     if not blocks:
         blocks.append(Paragraph(spans("No rule concerned a candidate.")))
@@ -53,14 +53,14 @@ def _table(story: Story, log: Log) -> Table:
         )
     return table(
         "t-rules",
-        spans("Rules that fired or could not be judged"),
+        spans("Rules that apply or could not be judged"),
         (
             Column("Rule", width=0.6),
             Column("Severity", width=0.9),
             Column("Title", width=2.0),
             Column("Condition", width=2.0),
-            Column("Fired for", width=1.5),
-            Column("Not evaluable for", width=1.5),
+            Column("Applies to", width=1.5),
+            Column("Open for", width=1.5),
         ),
         rows,
     )

@@ -111,6 +111,13 @@ SCREENS: Mapping[str, str] = {
     "ph_window": "pH window",
     "cannot_reach_ph": "pH cannot be reached",
 }
+#: Standings and outcomes of rules that a report calls otherwise than the result.
+STANDINGS: Mapping[str, str] = {"not evaluable": "open"}
+OUTCOMES: Mapping[str, str] = {
+    "fired": "applies",
+    "not fired": "does not apply",
+    "not evaluable": "open",
+}
 SEVERITIES: Mapping[str, str] = {
     "exclude": "exclusion",
     "warn": "warning",

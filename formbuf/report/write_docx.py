@@ -243,7 +243,10 @@ class _Word:
             doi = f" doi:{r.doi}" if r.doi else ""
             self.add(
                 paragraph(
-                    "Reference", start, run(f"{r.number}.\u2002{r.text}{doi}"), end
+                    "Reference",
+                    start,
+                    run(f"{r.number}.\u2002{r.text}{doi}{r.remark}"),
+                    end,
                 )
             )
 

@@ -222,7 +222,7 @@ class _Html:
         for r in self.document.references:
             text = f'<bdi title="{escape(r.path)}/text">{escape(r.text)}</bdi>'
             doi = f' doi:<bdi title="{escape(r.path)}/doi">{escape(r.doi)}</bdi>'
-            yield f'<li id="ref-{r.number}">{text}{doi if r.doi else ""}</li>'
+            yield f'<li id="ref-{r.number}">{text}{doi if r.doi else ""}{r.remark}</li>'
         yield "</ol>"
 
     def spans(self, spans: Spans) -> str:

@@ -103,7 +103,9 @@ class _Markdown:
             lines = []
             for r in self.document.references:
                 doi = f" doi:{escaped(r.doi)}" if r.doi else ""
-                lines.append(f"{r.number}. {opened(escaped(r.text))}{doi}")
+                lines.append(
+                    f"{r.number}. {opened(escaped(r.text))}{doi}{escaped(r.remark)}"
+                )
             yield "\n".join(lines)
 
     def _table(self, block: Table) -> Iterable[str]:

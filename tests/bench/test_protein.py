@@ -257,7 +257,7 @@ def test_residues_make_the_arm_without_buffer_a_back_up() -> None:
 
     assert found.standing == "back-up"
     assert found.carried_share > 1.0
-    assert "an estimate" in found.notes[0]
+    assert "estimated from its ionisable groups" in found.notes[0]
 
 
 def test_a_charge_makes_the_arm_without_buffer_a_back_up() -> None:

@@ -160,3 +160,15 @@ def test_retentate_says_that_nothing_public_tests_it() -> None:
     (forward, backward) = formbuf(*COMMANDS["retentate"], "--json").data()["directions"]
     assert forward["retentate_ph"] > forward["buffer_ph"]
     assert backward["buffer_ph"] < backward["retentate_ph"] == pytest.approx(6.0)
+
+
+def test_a_sheet_of_an_autoclaved_product_ends_at_the_hottest_temperature() -> None:
+    """The slope of pH at 121 C is taken from below: the equilibria end there."""
+    brief = str(EXAMPLES / "ampoule.toml")
+    done = formbuf(
+        "batch-sheet", brief, "--system", "sodium_citrate", "--volume", "1", "--json"
+    )
+    assert done.code == 0, done.err
+    hottest = done.data()["ways"][0]["readings"][-1]
+    assert hottest["temperature_c"] == 121.0
+    assert 0.0 < hottest["slope_per_k"] < 0.02

@@ -70,7 +70,7 @@ def test_explain_in_words(antibody: dict[str, Any]) -> None:
         "States",
         "Dissolved at the measurement temperature",
         "Freezing and drying",
-        "Findings that fired or are open",
+        "Findings that apply or are open",
         "What a dose brings",
         "Ionization",
         "Sources",

@@ -1,6 +1,6 @@
 """Broken briefs, tables, lists, titrations and command lines: never a traceback.
 
-Half an hour of broken inputs is run by hand (``-m by_hand``); the everyday run takes a
+Twenty thousand broken inputs are run by hand (``-m by_hand``); the everyday run takes a
 few hundred.
 Each prints its counts by kind and exit code.
 """

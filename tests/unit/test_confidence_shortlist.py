@@ -153,7 +153,7 @@ def test_the_verdict_says_how_often_the_lead_leads(drawn: Shortlist) -> None:
     assert lead.confidence.ranks is not None
     share = 100.0 * lead.confidence.ranks.lead.value
 
-    assert f"It leads in {share:.0f} % of 2500 draws" in drawn.verdict
+    assert f"The lead comes first in {share:.0f} % of 2500 draws" in drawn.verdict
     assert drawn.verdict.startswith(f"Lead: {lead.concentration_mmol_l:g} mmol/L")
 
 

@@ -39,6 +39,7 @@ from formbuf.output.freeze_thaw_words import class_words, range_words, title_of
 from formbuf.output.page import Grid, Heading
 from formbuf.output.writers import render
 from formbuf.product.brief import brief_from_mapping
+from formbuf.product.freezing_assess import NEGLIGIBLE_BELOW
 from formbuf.product.freezing_data import Observation
 
 SALT = {"--nacl": ("sodium_chloride", "mmol_l", 150.0)}
@@ -180,7 +181,7 @@ def test_the_rule_of_sodium_is_not_told_of_potassium() -> None:
 
 def test_where_says_so_if_nothing_can_crystallise_or_freeze() -> None:
     dilute = _only(_freeze(mmol_l=5.0, ph=4.5, to_c=-1.0))
-    assert dilute.where == "on the path: no salt reaches its solubility"
+    assert dilute.where == "on the path: no salt reaches its solubility down to -1 C"
     warm = _only(_freeze(to_c=-0.1))
     assert warm.where == "no ice forms at the temperatures asked for"
     assert warm.frozen.counted_class == "negligible"
@@ -322,6 +323,45 @@ def test_a_brief_compares_its_shortlist_in_order() -> None:
     assert by_key["sodium_phosphate"].frozen.counted_class == "severe"
     assert "avoid frozen" in by_key["sodium_phosphate"].verdict
     assert not by_key["tris_hydrochloride"].frozen.assessment.quantified
+
+
+def _words(system: str, mmol_l: float, ph: float, to_c: float = -20.0) -> str:
+    return _only(_freeze(system, mmol_l, ph, to_c)).verdict
+
+
+def test_a_verdict_says_whether_it_was_computed_or_observed() -> None:
+    """Words of classes.csv: no shift of malate is seen, none of glutamate published.
+
+    Just below its freezing point sodium phosphate lets no salt crystallise and moves
+    little by calculation alone; none of them may be said to hold its pH.
+    """
+    assert _words("sodium_phosphate", 50.0, 6.5, -0.4).startswith(
+        "computed to move little"
+    )
+    malate = _only(_freeze("sodium_malate", 10.0, 6.0, -20.0))
+    assert malate.frozen.assessment.freezing_class == "negligible"
+    assert abs(malate.frozen.assessment.freezing_shift) > NEGLIGIBLE_BELOW
+    assert malate.verdict == "little change was observed, more is computed; measure it"
+    histidine = _words("histidine_hydrochloride", 20.0, 6.0)
+    assert histidine == "freezing adds little; cooling alone moves the pH"
+    assert _words("sodium_glutamate", 10.0, 4.5).endswith("no evidence is known")
+    assert _words("sodium_tartrate", 10.0, 4.5).endswith("published without figures")
+    assert _words("histidine_acetate", 10.0, 6.0).endswith("published without figures")
+
+
+def test_what_was_not_computed_is_not_claimed() -> None:
+    """The path ends at -20 C: nothing is said of -40 C."""
+    s = _only(_freeze(mmol_l=5.0, ph=4.5, to_c=-25.0, added=SUGAR))
+    assert s.frozen.assessment.reason.startswith(
+        "no salt reaches its solubility down to -20 C"
+    )
+    assert s.where.endswith("down to -20 C")
+
+
+def test_the_legend_says_what_decides_a_class() -> None:
+    text = " ".join(render(freeze_thaw_page(_brief("liquid")), "table").split())
+    assert "it decides the class where both paths are computed" in text
+    assert "elsewhere published observations do" in text
 
 
 def test_a_liquid_product_fails_only_when_frozen() -> None:

@@ -156,7 +156,7 @@ def test_a_missing_package_is_told_before_anything_is_computed(
     assert done.code == 2
     said = done.one_error()
     assert package in said
-    assert "pip install 'formbuf" in said
+    assert "pip install '." in said
     assert instead in said
 
 

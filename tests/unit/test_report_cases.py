@@ -226,7 +226,7 @@ def test_ties_are_told_in_words() -> None:
     assert lead["tied_with"], "the example has lost its tie"
     text = _summary(report)
     assert "cannot be told apart from" in text
-    assert "is tied with nobody" not in text
+    assert "is tied with no other candidate" not in text
     assert any(p.id == "tie" and p.weight == 1 for p in report.document.open_points)
 
 
@@ -277,7 +277,9 @@ def test_every_link_of_a_report_leads_somewhere(report: Report) -> None:
 def test_values_to_confirm_hold_no_published_one(report: Report) -> None:
     rows = report.data["rationale"]["to_confirm"]
     assert rows
-    assert {r["basis"] for r in rows} <= {"memory", "practice", "judgement"}
+    known = {"memory", "practice", "judgement", "stated"}
+    assert {r["basis"] for r in rows} <= known
+    assert {r["group"] for r in rows if r["basis"] == "stated"} <= {"load"}
 
 
 def test_a_result_with_draws_has_a_section_on_confidence() -> None:
@@ -285,7 +287,7 @@ def test_a_result_with_draws_has_a_section_on_confidence() -> None:
     assert "confidence" in [s.id for s in drawn.document.sections]
     assert "confidence" not in [s.id for s in plain.document.sections]
     text = _summary(drawn)
-    assert re.search(r"It leads in \d+ % of the draws", text)
+    assert re.search(r"The lead comes first in \d+ % of the draws", text)
     assert "of the draws" not in _summary(plain)
     assert drawn.data["rationale"]["seed"] == 1
     assert plain.data["rationale"]["seed"] is None
