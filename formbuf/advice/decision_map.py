@@ -12,9 +12,9 @@ from formbuf.advice.results import Candidate
 from formbuf.advice.variations import (
     HIGHEST_TARGET_PH,
     LOWEST_TARGET_PH,
+    Known,
     Variation,
-    heads_of,
-    ranked_with,
+    heads_with,
 )
 from formbuf.errors import InputError
 from formbuf.product.brief import Completed
@@ -102,6 +102,7 @@ def decision_map(
     reach_ph: float = DEFAULT_REACH_PH,
     step_ph: float = DEFAULT_STEP_PH,
     progress: Progress | None = None,
+    known: Known | None = None,
 ) -> DecisionMap:
     """Judge a product again at targets around its own.
 
@@ -113,6 +114,8 @@ def decision_map(
     step_ph : float
         Above 0; at most 200 steps either way.
     progress : callable, optional
+    known : dict, optional
+        Variations judged already, see `heads_with`.
 
     Returns
     -------
@@ -124,12 +127,14 @@ def decision_map(
     InputError
         For a reach or step that is not allowed.
     """
+    known = {} if known is None else known
     shifts = _shifts(completed.brief.ph.target, reach_ph, step_ph)
     points = []
     for done, shift in enumerate(shifts):
         if progress is not None:
             progress(done, len(shifts))
-        heads = heads_of(ranked_with(completed, Variation(target_shift_ph=shift)))
+        moved = Variation(target_shift_ph=shift)
+        heads = heads_with(completed, moved, known)
         target = round(completed.brief.ph.target + shift, 9)
         points.append(MapPoint(target, tuple(_place(c) for c in heads)))
     if progress is not None:

@@ -17,7 +17,7 @@ from formbuf.advice.criteria_table import settings_for
 from formbuf.advice.decision_map import Progress
 from formbuf.advice.loads import load_budget
 from formbuf.advice.results import Candidate
-from formbuf.advice.variations import Variation, heads_of, ranked_with
+from formbuf.advice.variations import Known, Variation, heads_with
 from formbuf.advice.weight_changes import weight_changes
 from formbuf.errors import InputError
 from formbuf.product.brief import Completed
@@ -119,7 +119,7 @@ class _Axis:
         """Return the product at a distance."""
         factor = math.exp(self.sign * distance)
         if self.requirement == "target_ph":
-            return Variation(target_shift_ph=self.sign * distance)
+            return Variation(target_shift_ph=round(self.sign * distance, 9))
         if self.requirement == "acid_load":
             return Variation(acid_factor=factor)
         if self.requirement == "base_load":
@@ -133,7 +133,10 @@ class _Axis:
 
 
 def sensitivity(
-    completed: Completed, *, progress: Progress | None = None
+    completed: Completed,
+    *,
+    progress: Progress | None = None,
+    known: Known | None = None,
 ) -> Sensitivity:
     """Return the smallest changes of weights and requirements that change the lead.
 
@@ -141,13 +144,15 @@ def sensitivity(
     ----------
     completed : Completed
     progress : callable, optional
+    known : dict, optional
+        Variations judged already, see `heads_with`.
 
     Returns
     -------
     Sensitivity
     """
-    ranked = ranked_with(completed, Variation())
-    heads = heads_of(ranked)
+    known = {} if known is None else known
+    heads = heads_with(completed, Variation(), known)
     if not heads:
         return Sensitivity(None, "", (), ())
     settings = settings_for(completed.library, completed.brief)
@@ -156,7 +161,7 @@ def sensitivity(
     for done, axis in enumerate(axes):
         if progress is not None:
             progress(done, len(axes))
-        changes.append(_change(completed, axis, heads[0]))
+        changes.append(_change(completed, axis, heads[0], known))
     if progress is not None:
         progress(len(axes), len(axes))
     return Sensitivity(
@@ -183,13 +188,15 @@ def _axes(completed: Completed) -> list[_Axis]:
     ]
 
 
-def _change(completed: Completed, axis: _Axis, lead: Candidate) -> RequirementChange:
+def _change(
+    completed: Completed, axis: _Axis, lead: Candidate, known: Known
+) -> RequirementChange:
     """Walk outwards until the lead changes, then halve the last step."""
     same, furthest = 0.0, 0.0
     changed: tuple[float, Candidate | None] | None = None
     for step in axis.steps:
         try:
-            now = _lead(completed, axis.variation(step))
+            now = _lead(completed, axis.variation(step), known)
         except InputError:
             break
         furthest = step
@@ -202,7 +209,7 @@ def _change(completed: Completed, axis: _Axis, lead: Candidate) -> RequirementCh
             if changed[0] - same <= axis.tolerance:
                 break
             middle = 0.5 * (same + changed[0])
-            now = _lead(completed, axis.variation(middle))
+            now = _lead(completed, axis.variation(middle), known)
             if now is None or now.key != lead.key:
                 changed = (middle, now)
             else:
@@ -220,6 +227,6 @@ def _change(completed: Completed, axis: _Axis, lead: Candidate) -> RequirementCh
     )
 
 
-def _lead(completed: Completed, variation: Variation) -> Candidate | None:
-    heads = heads_of(ranked_with(completed, variation))
+def _lead(completed: Completed, variation: Variation, known: Known) -> Candidate | None:
+    heads = heads_with(completed, variation, known)
     return heads[0] if heads else None

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 from types import MappingProxyType
+from typing import TypeAlias
 
 from formbuf.advice.case import Case, case_for
 from formbuf.advice.compatibility import with_compatibility
@@ -63,6 +64,23 @@ def ranked_with(completed: Completed, variation: Variation) -> tuple[Candidate, 
     case = _case(completed, variation)
     judged, _ = with_compatibility(case, judge_all(case))
     return rank(judged, case.settings)
+
+
+#: Heads of variations that were judged already, for calls on the same product.
+Known: TypeAlias = dict[Variation, tuple[Candidate, ...]]
+
+
+def heads_with(
+    completed: Completed, variation: Variation, known: Known
+) -> tuple[Candidate, ...]:
+    """Return one candidate per place of a variation, judged once.
+
+    ``known`` is kept by the caller for one product; raises as `ranked_with`.
+    """
+    found = known.get(variation)
+    if found is None:
+        found = known[variation] = heads_of(ranked_with(completed, variation))
+    return found
 
 
 def heads_of(ranked: tuple[Candidate, ...]) -> tuple[Candidate, ...]:

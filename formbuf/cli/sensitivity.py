@@ -67,10 +67,12 @@ def sensitivity_command(
         decision_map,
     )
     from formbuf.advice.requirement_changes import sensitivity
+    from formbuf.advice.variations import Known
     from formbuf.output.sensitivity_page import sensitivity_page
     from formbuf.product.brief import complete, read_brief
 
     completed = complete(read_brief(brief), open_library(knowledge))
+    known: Known = {}
     progress = Progress("targets of the map")
     try:
         chart = decision_map(
@@ -78,10 +80,11 @@ def sensitivity_command(
             reach_ph=DEFAULT_REACH_PH if wide is None else wide,
             step_ph=DEFAULT_STEP_PH if fine is None else fine,
             progress=progress,
+            known=known,
         )
         progress.close()
         progress = Progress("requirements")
-        found = sensitivity(completed, progress=progress)
+        found = sensitivity(completed, progress=progress, known=known)
     finally:
         progress.close()
     if figure is not None:
