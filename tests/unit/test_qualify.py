@@ -218,16 +218,8 @@ def test_a_changed_cell_of_any_table_is_seen(name: str, tmp_path: Path) -> None:
     assert found[name] != load_record()["tables"][name]
 
 
-def _tables() -> list[object]:
-    """Every fourth table runs with the long tests, the rest by hand: 5 s each."""
-    long, rest = pytest.mark.slow, pytest.mark.by_hand
-    return [
-        pytest.param(name, marks=rest if place % 4 else long)
-        for place, name in enumerate(sorted(tables()))
-    ]
-
-
-@pytest.mark.parametrize("name", _tables())
+@pytest.mark.slow
+@pytest.mark.parametrize("name", sorted(tables()))
 def test_a_changed_cell_fails_the_qualification_or_the_check(
     name: str, tmp_path: Path
 ) -> None:
