@@ -49,6 +49,8 @@ class Draws:
     load_inputs : mapping of str to Input
     loads : LoadBudget
         As budgeted.
+    gas_factor : ndarray
+        On the carbon dioxide that is taken up.
     """
 
     brief: ProductBrief
@@ -61,6 +63,7 @@ class Draws:
     base_mmol_l: Array
     load_inputs: Mapping[str, Input]
     loads: LoadBudget
+    gas_factor: Array
 
 
 @dataclass(frozen=True)
@@ -110,6 +113,7 @@ def prepare_draws(result: Shortlist, sampler: Sampler) -> Draws:
     model = error_model(library, brief.uncertainty)
     builder = Builder(model, sampler)
     acid, base = np.zeros(sampler.count), np.zeros(sampler.count)
+    gas, gas_factor = result.loads.gas, np.ones(sampler.count)
     for item in result.loads.items:
         if item.acid_mmol_l <= 0.0 and item.base_mmol_l <= 0.0:
             continue
@@ -121,6 +125,8 @@ def prepare_draws(result: Shortlist, sampler: Sampler) -> Draws:
                 Input(f"load:{item.name}", item.name, figure.advice, figure.value, "1")
             )
         )
+        if gas is not None and item.name == gas.name:
+            gas_factor = factor
         acid = acid + item.acid_mmol_l * factor
         base = base + item.base_mmol_l * factor
     return Draws(
@@ -134,6 +140,7 @@ def prepare_draws(result: Shortlist, sampler: Sampler) -> Draws:
         base,
         builder.inputs,
         result.loads,
+        gas_factor,
     )
 
 
@@ -291,9 +298,9 @@ def _within_end(
             continue
         inside: Flags = np.ones(made.count, dtype=bool)
         moved = ph[t] - ph[at] if t != at else -reading
-        acid = draws.acid_mmol_l + draws.loads.more_acid_mmol_l(
-            brief.ph.low + state.ph - states[at], t
-        )
+        low = brief.ph.low + state.ph - states[at]
+        more = draws.gas_factor * draws.loads.more_acid_mmol_l(low, t)
+        acid = draws.acid_mmol_l + more
         for load in (-acid, draws.base_mmol_l):
             end = made.ph(t, load / water) if np.any(load) else ph[t]
             as_measured = end - moved
@@ -340,8 +347,8 @@ def _required(
     states = {s.temperature_c: np.array([s.ph]) for s in candidate.states}
     loads = draws.acid_mmol_l, draws.base_mmol_l
     acid, base = (np.array([float(np.median(load))]) for load in loads)
-    carried = _carried(draws, made, ph, own, loads)
-    before = _carried(draws, still, states, own, (acid, base))
+    carried = _carried(draws, made, ph, own, (*loads, draws.gas_factor))
+    before = _carried(draws, still, states, own, (acid, base, np.ones(1)))
     if nominal is None:
         nominal = candidate.concentration_mmol_l / max(float(before[0]), 1e-12)
     with np.errstate(divide="ignore"):
@@ -355,9 +362,12 @@ def _carried(
     made: Drawn,
     ph: Mapping[float, Array],
     own: list[int],
-    loads: tuple[Array, Array],
+    loads: tuple[Array, Array, Array],
 ) -> Array:
-    """Smallest ratio of what the buffer's own species carry to the load."""
+    """Smallest ratio of what the buffer's own species carry to the load.
+
+    ``loads`` hold acid, base, and the factor on the carbon dioxide taken up.
+    """
     window = windows_of(draws.brief)
     water = 1000.0 * float(made.mixture.water_kg_l)
     best: Array = np.full(made.count, np.inf)
@@ -366,11 +376,9 @@ def _carried(
             continue
         drift = ph[t] - ph[window.measure_c]
         low, high = window.start_low + drift, window.start_high + drift
+        more = draws.loads.more_acid_mmol_l(low - window.room_low, t)
         for load, (start, end) in zip(
-            (
-                loads[0] + draws.loads.more_acid_mmol_l(low - window.room_low, t),
-                loads[1],
-            ),
+            (loads[0] + loads[2] * more, loads[1]),
             ((low, low - window.room_low), (high, high + window.room_high)),
             strict=True,
         ):

@@ -62,6 +62,14 @@ class GasUptake:
             return "carbon dioxide taken up"
         return "carbon dioxide of the headspace"
 
+    def scaled(self, factor: float) -> GasUptake:
+        """Return it with so many times the gas: uptake is linear in the pressure."""
+        return replace(
+            self,
+            pressure_pa=factor * self.pressure_pa,
+            counted_mmol_l=factor * self.counted_mmol_l,
+        )
+
     def left_pa(self, ph: ArrayLike, temperature_c: float) -> Array:
         """Pressure above the product once it has taken up its share [Pa].
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -13,6 +13,9 @@ from formbuf.library.records import Basis
 from formbuf.product.product_brief import ProductBrief
 
 Array = NDArray[np.float64]
+
+#: Less than this of acid or base is no load: it moves no product (judgement) [mmol/L].
+LEAST_LOAD_MMOL_L = 0.001
 
 
 @dataclass(frozen=True, slots=True)
@@ -85,8 +88,21 @@ class LoadBudget:
 
     @property
     def has_load(self) -> bool:
-        """Whether there is a load at all."""
-        return self.acid_mmol_l > 0.0 or self.base_mmol_l > 0.0
+        """Whether there is a load at all; a trace of computed carbon dioxide is none."""
+        return max(self.acid_mmol_l, self.base_mmol_l) >= LEAST_LOAD_MMOL_L
+
+    def scaled(self, acid_factor: float, base_factor: float) -> LoadBudget:
+        """Return the budget with every load of acid and of base times a factor."""
+        items = tuple(
+            replace(
+                item,
+                acid_mmol_l=acid_factor * item.acid_mmol_l,
+                base_mmol_l=base_factor * item.base_mmol_l,
+            )
+            for item in self.items
+        )
+        gas = None if self.gas is None else self.gas.scaled(acid_factor)
+        return LoadBudget(items, gas)
 
     @property
     def all_default(self) -> bool:

@@ -14,6 +14,8 @@ from formbuf.advice import precedent
 from formbuf.advice.case import Case
 from formbuf.advice.compatibility import exposures_of, findings_of, quantities_of
 from formbuf.advice.evaluate import evaluate
+from formbuf.advice.gas_uptake import uptake_notes
+from formbuf.advice.loads import LEAST_LOAD_MMOL_L
 from formbuf.advice.measure import judge_criteria
 from formbuf.advice.results import Candidate, CriterionResult, Standing
 from formbuf.advice.sizing import Sizing, windows_of
@@ -37,11 +39,13 @@ def judge_none(case: Case) -> Candidate:
     carried, how = _carried(case)
     standing, note = _standing(case, carried, how)
     candidate = _made(case, system, carried)
+    ph_by_c = {s.temperature_c: s.ph for s in candidate.states}
+    uptake = uptake_notes(case.loads.gas, case.brief, case.loads.acid_mmol_l, ph_by_c)
     return replace(
         candidate,
         standing=standing,
         carried_share=carried if carried is not None and np.isfinite(carried) else None,
-        notes=(note, *candidate.notes),
+        notes=(note, *uptake, *candidate.notes),
     )
 
 
@@ -64,11 +68,10 @@ def _carried(case: Case) -> tuple[float | None, str]:
     if known_from == "titration" and not (per_gram[0] <= low <= high <= per_gram[-1]):
         return None, "titration does not span the window"
     if known_from is not None:
-        acid, alkali = _drug_capacity(case)
-        return _least(acid, alkali, case), known_from
+        return _drug_share(case), known_from
     if not loads.has_load:
         return float("inf"), "no load"
-    least = _least(*_drug_capacity(case), case)
+    least = _drug_share(case)
     if least >= 1.0:
         return least, "rest"
     if drug.kind in PROTEIN_KINDS:
@@ -76,34 +79,46 @@ def _carried(case: Case) -> tuple[float | None, str]:
     return None, "biologic" if drug.is_biologic else "unknown"
 
 
-def _least(acid_mmol_l: float, base_mmol_l: float, case: Case) -> float:
+def _least(
+    acid_mmol_l: float, base_mmol_l: float, case: Case, more_acid_mmol_l: float = 0.0
+) -> float:
     loads = case.loads
     shares = [
         carried / load
         for carried, load in (
-            (acid_mmol_l, loads.acid_mmol_l),
+            (acid_mmol_l, loads.acid_mmol_l + more_acid_mmol_l),
             (base_mmol_l, loads.base_mmol_l),
         )
-        if load > 0.0
+        if load >= LEAST_LOAD_MMOL_L
     ]
     return min(shares, default=float("inf"))
 
 
-def _drug_capacity(case: Case) -> tuple[float, float]:
-    """Acid and base [mmol/L] that drug, excipients and water take up in the window.
+def _drug_share(case: Case) -> float:
+    """Share of the loads that drug, excipients and water carry, at the worst temperature.
 
     Of a drug of which nothing is known, the rest is the least that the product takes.
+    The limits move with the pH of the product, as for a buffer.
     """
     windows = windows_of(case.brief)
-    t = windows.measure_c
-    mixed = _bare_mixture(case, windows.start_low)
-    acid = mixed.titrate(t, case.brief.ph.low, STRONG_ACID).amount_mol_kg
-    other = _bare_mixture(case, windows.start_high)
-    base = other.titrate(t, case.brief.ph.high, STRONG_BASE).amount_mol_kg
-    return (
-        1000.0 * float(acid) * float(mixed.water_kg_l),
-        1000.0 * float(base) * float(other.water_kg_l),
-    )
+    acid_side = _bare_mixture(case, windows.start_low)
+    base_side = _bare_mixture(case, windows.start_high)
+    least = float("inf")
+    for t in (windows.measure_c, *windows.others_c):
+        low, high = case.brief.ph.low, case.brief.ph.high
+        if t != windows.measure_c:
+            low = float(acid_side.solve(t).ph) - windows.room_low
+            high = float(base_side.solve(t).ph) + windows.room_high
+        acid = acid_side.titrate(t, low, STRONG_ACID).amount_mol_kg
+        base = base_side.titrate(t, high, STRONG_BASE).amount_mol_kg
+        share = _least(
+            1000.0 * float(acid) * float(acid_side.water_kg_l),
+            1000.0 * float(base) * float(base_side.water_kg_l),
+            case,
+            float(case.loads.more_acid_mmol_l(low, t)),
+        )
+        least = min(least, share)
+    return least
 
 
 def _bare_mixture(case: Case, ph: float) -> Mixture:

@@ -92,7 +92,7 @@ def parse_axis(text: str) -> Axis:
     if len({(type(value), value) for value in values}) < len(values):
         msg = f"--over: {text!r} names a value twice, allowed each once"
         raise InputError(msg)
-    return Axis(key, values)
+    return Axis(bracketed(dotted(key)), values)
 
 
 def dotted(key: str) -> str:

@@ -12,7 +12,6 @@ from typing import TypeAlias
 
 from formbuf.advice.case import Case, case_for
 from formbuf.advice.compatibility import with_compatibility
-from formbuf.advice.loads import LoadBudget
 from formbuf.advice.ranking import rank
 from formbuf.advice.results import Candidate
 from formbuf.advice.shortlist import judge_all
@@ -113,7 +112,9 @@ def _case(completed: Completed, variation: Variation) -> Case:
     if variation.ceiling_factor != 1.0:
         case = _with_fallback(case, variation.ceiling_factor)
     if variation.acid_factor != 1.0 or variation.base_factor != 1.0:
-        case = replace(case, loads=_scaled(case.loads, variation))
+        case = replace(
+            case, loads=case.loads.scaled(variation.acid_factor, variation.base_factor)
+        )
     return case
 
 
@@ -136,15 +137,3 @@ def _with_fallback(case: Case, factor: float) -> Case:
     anchors = {**table["anchors"], "capacity": moved}
     settings = replace(case.settings, table={**table, "anchors": anchors})
     return replace(case, settings=settings)
-
-
-def _scaled(loads: LoadBudget, variation: Variation) -> LoadBudget:
-    items = tuple(
-        replace(
-            item,
-            acid_mmol_l=variation.acid_factor * item.acid_mmol_l,
-            base_mmol_l=variation.base_factor * item.base_mmol_l,
-        )
-        for item in loads.items
-    )
-    return replace(loads, items=items)

@@ -65,7 +65,8 @@ def _without_heads(candidates: Sequence[Candidate]) -> str:
     if bare is None or bare.dropped_by:
         return f"No candidate is acceptable: {screened}."
     note = f": {bare.notes[0]}" if bare.notes else ""
-    if bare.standing == "not evaluable":
+    is_open = bare.standing == "viable" and bare.carried_share is None
+    if bare.standing == "not evaluable" or is_open:
         return (
             f"No buffer is acceptable: {screened}. Whether the product stands without "
             f"one is open{note}."
@@ -104,7 +105,7 @@ def _unloaded(case: Case) -> str:
     if case.brief.is_large_volume_intravenous:
         least = "the smallest that is weighed"
     return (
-        "no load stated: capacity does not tell the candidates apart and is left out of "
+        "no load to carry: capacity does not tell the candidates apart and is left out of "
         f"the ranking; proposed is {least}, and the product without buffer is the one to "
         "beat; size from the acid or base that a batch without buffer takes up over "
         "shelf life ([loads])"

@@ -25,6 +25,10 @@ from formbuf.product.composition import Extra
 
 LEAST_BATCH_L, MOST_BATCH_L = 1e-6, 1e6
 SLOPE_STEP_K = 0.5
+#: Share of the batch below which the water to add is too little to work with (practice).
+LITTLE_WATER = 0.5
+#: Osmolality above the target from which it is worth a word [mosmol/kg].
+OVERFULL_MOSM_KG = 5.0
 WATER_G_MOL = 1000.0 * WATER_MOLAR_MASS_KG_MOL
 
 
@@ -78,6 +82,20 @@ def batch_sheet(
         notes = [*_as_given(bench, ways[0].made), *notes]
     elif len(ways) == 1 and bench.system.role != "none":
         notes.append("one way of making it: the materials of the tables allow no other")
+    notes += [
+        f"{sheet.way.title}: only {100.0 * sheet.sums.water_g / sheet.sums.batch_g:.0f} % "
+        "of the batch is water to add: whether all dissolves and the titrant is strong "
+        "enough is open"
+        for sheet in sheets
+        if sheet.sums.water_g < LITTLE_WATER * sheet.sums.batch_g
+    ]
+    target = bench.background.target_mosm_kg
+    over = max(sheet.osmolality_mosm_kg for sheet in sheets)
+    if target is not None and over > target + OVERFULL_MOSM_KG:
+        notes.append(
+            f"without any tonicity agent it has {over:.0f} mosmol/kg, above the "
+            f"{target:g} aimed at: none is added"
+        )
     for way in ways:
         extra = ", ".join(f"{v:.3g} mmol/L {k}" for k, v in way.by_product.items())
         if extra:
@@ -131,6 +149,14 @@ def _sheet(bench: Bench, way: Way, batch_l: float, hand: InHand) -> WaySheet:
     allowance = batch_errors.allowance(bench, made, batch_l, hand)
     lines = batch_steps.ordered(_lines(bench, way, batch_l, hand))
     sums = _sums(bench, made, lines, batch_l)
+    if sums.water_g <= 0.0:
+        msg = (
+            f"{way.title}: what is weighed takes up more than the batch of "
+            f"{batch_l:g} L ({sums.weighed_g:.4g} g), allowed room for water"
+        )
+        raise InputError(
+            msg, hint="Take a stronger titrant (--strength) or a solid one."
+        )
     warmer, electrode = batch_errors.temperature_errors(bench, made)
     return WaySheet(
         way,

@@ -84,6 +84,11 @@ class Ladder:
     curve: ChargeCurve | None = None
     work: float = 0.0
 
+    def __post_init__(self) -> None:
+        """Keep the steps as tuples, whatever sequence they came in."""
+        for name in ("pka", "dh_kj_mol", "dcp_j_mol_k", "aggregates", "sites"):
+            object.__setattr__(self, name, tuple(getattr(self, name)))
+
     @classmethod
     def of_curve(cls, name: str, curve: ChargeCurve) -> Ladder:
         """Return a macro-ion that is known by a curve."""

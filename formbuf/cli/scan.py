@@ -68,8 +68,8 @@ def scan_command(
 ) -> None:
     """Evaluate a grid of briefs and write one row per point and candidate, as CSV.
 
-    KEY is a key of the brief (loads.acid_mmol_l, storage[1].temperature_c, also
-    storage.1.temperature_c) or target_ph, which moves the window along. With --system, pH, ionic strength and
+    KEY is a key of the brief (loads.acid_mmol_l, storage[1].temperature_c) or
+    target_ph, which moves the window along. With --system, pH, ionic strength and
     capacity of recipes over target_ph, concentration_mmol_l, temperature_c and
     load_mmol_l (strong base, negative for acid), millions in a minute.
     """

@@ -47,12 +47,11 @@ def audit(library: Library) -> list[str]:
         (schemas.SPECIES, _check_species),
         (schemas.ASSOCIATIONS, _check_association),
         (schemas.SYSTEMS, _check_system),
-        (schemas.PRECEDENT, _check_precedent),
-        (schemas.ROUTES, _check_route),
     )
     for schema, check in checks:
         for row in library.read_table(schema):
             check(library, row, faults)
+    check_limits(library, faults)
     _check_glass(library.read_table(schemas.GLASS_ALKALI), faults)
     return [
         *faults.ours.lines,
@@ -60,6 +59,14 @@ def audit(library: Library) -> list[str]:
         *unknown_sources(library),
         *unused_sources(library),
     ]
+
+
+def check_limits(library: Library, faults: TableFaults) -> None:
+    """Check that the limits of precedent and routes rise."""
+    for row in library.read_table(schemas.PRECEDENT):
+        _check_precedent(row, faults)
+    for row in library.read_table(schemas.ROUTES):
+        _check_route(row, faults)
 
 
 def check_materials(library: Library, rows: Iterable[Row], faults: TableFaults) -> None:
@@ -212,7 +219,7 @@ def _check_system(library: Library, row: Row, faults: TableFaults) -> None:
             )
 
 
-def _check_precedent(library: Library, row: Row, faults: TableFaults) -> None:
+def _check_precedent(row: Row, faults: TableFaults) -> None:
     columns = ("usual_low_mmol_l", "usual_high_mmol_l", "ceiling_mmol_l")
     values = [row.number(column) for column in columns]
     known = [value for value in values if value is not None]
@@ -224,7 +231,7 @@ def _check_precedent(library: Library, row: Row, faults: TableFaults) -> None:
         faults.add(row, "concentration_basis", "empty beside a figure, allowed a basis")
 
 
-def _check_route(library: Library, row: Row, faults: TableFaults) -> None:
+def _check_route(row: Row, faults: TableFaults) -> None:
     pairs = (
         ("ph_low", "ph_high"),
         ("osmolality_low_mosm_kg", "osmolality_high_mosm_kg"),

@@ -79,11 +79,12 @@ def open_library(store: Store) -> Library:
 
 
 def _check_overlay(library: Library, tables: build.Tables) -> None:
-    """Raise if a material of the user disagrees with its own formula."""
-    from formbuf.library.audit import check_materials
+    """Raise if rows of the user disagree with themselves or with ours."""
+    from formbuf.library.audit import check_limits, check_materials
 
     faults = TableFaults()
     check_materials(library, tables["materials.csv"], faults)
+    check_limits(library, faults)
     # ours are sound by themselves: what does not fit now, the user's rows brought
     faults.overlay.lines += faults.ours.lines
     faults.ours.lines.clear()

@@ -160,13 +160,13 @@ def write_bytes(path: Path, data: bytes) -> None:
     """Write a file whole; see `write_file`."""
     temporary: str | None = None
     try:
-        target = path.resolve() if path.is_symlink() else path
-        if target.exists() and not target.is_file():
-            if target.is_dir():
+        if path.exists() and not path.is_file():
+            if path.is_dir():
                 msg = f"{path}: is a directory, allowed a file"
                 raise OutputError(msg)
-            target.write_bytes(data)  # a device or a pipe is written to as it is
+            path.write_bytes(data)  # a device or a pipe is written to as it is
             return
+        target = path.resolve() if path.is_symlink() else path
         if target.exists() and not os.access(target, os.W_OK):
             msg = f"{path}: cannot be written (the file is read-only)"
             raise OutputError(msg, hint="What was there before is untouched.")

@@ -77,7 +77,7 @@ def _unknown(location: Location, kind: str, name: str, known: Collection[str]) -
     allowed = ", ".join(names) if short else f"{article} {kind}"
     hint = suggest(name, names)
     if not hint and not short:
-        hint = f"See `formbuf knowledge list {_TABLES[kind]}`."
+        hint = f"See `formbuf knowledge show {_TABLES[kind]}`."
     return Fault(location, f"unknown {kind}", allowed, name, hint)
 
 

@@ -125,7 +125,15 @@ def _amorphous_sugar(
     )
     has_agent = filler.brief.tonicity.agent is not None
     hardened = filler.form != "liquid" or any(map(is_surely_frozen, storage))
-    is_barred = set(filler.brief.exclude) >= AMORPHOUS_SUGARS
+    excluded = set(filler.brief.exclude)
+    barred = {
+        name
+        for key in excluded
+        for name in (
+            library.materials[key].contents if key in library.materials else (key,)
+        )
+    }
+    is_barred = barred >= AMORPHOUS_SUGARS
     if stated or has_agent or not hardened or not is_biologic(filler.kind) or is_barred:
         return stated, False
     return float(filler.take("tonicity.amorphous_sugar_percent_w_v")), True

@@ -215,7 +215,7 @@ def fact_question(
     }
     reading: Mapping[str, Reader] = {
         "yes_no": readers.yes_no,
-        "number": readers.number,
+        "number": readers.number_in(fact.unit) if fact.unit else readers.number,
         "choice": readers.one_of(fact.choices),
         "set": readers.some_of(fact.choices),
     }

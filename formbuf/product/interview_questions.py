@@ -148,7 +148,7 @@ def _ph_and_storage() -> list[Question]:
             "How much is filled into one container, mL?",
             "Small containers have more glass surface for each millilitre and so give "
             "off more alkali.",
-            readers.number,
+            readers.number_in("mL"),
             None,
             lambda a: str(a.get("container.type") or "").startswith("glass"),
         ),
@@ -181,7 +181,7 @@ def _use() -> list[Question]:
             "With the doses of a day it gives what the buffer brings to the patient, "
             "against limits for sodium, phosphate and others. For a spray give the "
             "volume of all puffs of a dose; for a drop about 0.04.",
-            readers.number,
+            readers.number_in("mL"),
         ),
         Question(
             "dose.per_day",
@@ -194,7 +194,7 @@ def _use() -> list[Question]:
             "How fast is it infused, mL/h?",
             "Leave it unknown for an injection within minutes. Citrate has a limit of "
             "rate.",
-            readers.number,
+            readers.number_in("mL/h"),
             None,
             infused,
         ),
@@ -202,7 +202,7 @@ def _use() -> list[Question]:
             "dose.body_mass_kg",
             "What is the lowest body mass of the patients, kg?",
             "Some limits are per kilogram of body mass.",
-            readers.number,
+            readers.number_in("kg"),
             None,
             lambda a: a.get("product.population") in CHILDREN or infused(a),
         ),
@@ -222,7 +222,7 @@ def _drug() -> list[Question]:
             "How concentrated is the drug, mg/mL?",
             "The drug takes up volume, and a concentrated protein or a drug with a pK "
             "near the target pH buffers by itself.",
-            readers.number,
+            readers.number_in("mg/mL"),
             None,
             has_drug,
         ),
@@ -230,7 +230,7 @@ def _drug() -> list[Question]:
             "drug.molar_mass_g_mol",
             "What is the molar mass of the form that is weighed, g/mol?",
             "Needed to count the protons and the counter-ions of the drug.",
-            readers.number,
+            readers.number_in("g/mol"),
             None,
             lambda a: small(a) and _known(a, "drug.concentration_mg_ml"),
         ),
@@ -302,7 +302,7 @@ def _rest(library: Library) -> list[Question]:
             "Acid from degradation or the closure, best from a stability study without "
             "buffer. Carbon dioxide that the pack or the headspace lets in is counted "
             "for you. Without an answer a usual load is assumed and marked so.",
-            readers.number,
+            readers.number_in("mmol/L"),
         ),
         Question(
             "loads.base_mmol_l",
@@ -310,7 +310,7 @@ def _rest(library: Library) -> list[Question]:
             "Base from degradation or the drug. Alkali from glass is counted for you; if "
             "your study stood in the final glass, its drift holds that already: set "
             "container.count_alkali to false in the brief.",
-            readers.number,
+            readers.number_in("mmol/L"),
         ),
         Question(
             "exclude",

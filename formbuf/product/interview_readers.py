@@ -35,6 +35,9 @@ AMOUNT_UNITS: Mapping[str, str] = {
 #: A dash between two numbers, as in 2-8; before a number alone it is a sign.
 _RANGE = re.compile(r"(?<=\d)(?:[-\u2013]|\s[-\u2013]\s)(?=\d)|\.\.")
 _NUMBER = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)")
+_WITH_UNIT = re.compile(
+    r"(?P<number>[+-]?(?:\d+(?:\.\d*)?|\.\d+))\s*(?P<unit>[^\d\s.,+-].*)"
+)
 _EXCIPIENT = re.compile(r"(?P<name>.+?)[\s=]+(?P<amount>[\d.]+)\s*(?P<unit>[^\d.]+)")
 _PKA = re.compile(r"(?P<kind>acid|base)\s*[:=]?\s*(?P<pka>[+-]?[\d.]+)", re.IGNORECASE)
 
@@ -45,13 +48,27 @@ def fault(what: str, allowed: str, hint: str = "") -> InputError:
 
 
 def number(text: str) -> float:
-    """Return a plain decimal number, with or without its unit behind it."""
-    first = text.split()[0] if text.split() else ""
-    bare = first if _NUMBER.fullmatch(first) else text.strip()
+    """Return a plain decimal number."""
+    bare = text.strip()
     if not _NUMBER.fullmatch(bare):
         hint = "Decimals have a point: 6.5, not 6,5." if "," in text else ""
-        raise fault(f"{text.strip()!r} is no number", "a number such as 6.5", hint)
+        raise fault(f"{bare!r} is no number", "a number alone, such as 6.5", hint)
     return float(bare)
+
+
+def number_in(unit: str) -> Reader:
+    """Return a reader of a number, alone or with this very unit behind it."""
+
+    def read(text: str) -> float:
+        match = _WITH_UNIT.fullmatch(text.strip())
+        if match is None:
+            return number(text)
+        if match["unit"].casefold() != unit.casefold():
+            msg = f"{text.strip()!r} is not in {unit}"
+            raise fault(msg, f"a number in {unit}, such as 6.5")
+        return float(match["number"])
+
+    return read
 
 
 def whole(text: str) -> int:

@@ -180,7 +180,8 @@ def _place(story: Story, lead: Cursor) -> Spans:
         place = spans(
             "It ranks first of ",
             counted(count, "place"),
-            " (one for each buffering species) with an overall desirability of ",
+            " (one for each buffering species and each formula of the brief) with an "
+            "overall desirability of ",
             lead.value("desirability", places=2),
             ".",
         )

@@ -117,7 +117,7 @@ NAMES = [
         'require = ["qqqq"]\n' + GOOD_HEAD,
         "require[1] (line 1)",
         ("unknown species or system",),
-        "formbuf knowledge list systems",
+        "formbuf knowledge show systems",
     ),
     after_is_wrong(
         "misspelt_system",

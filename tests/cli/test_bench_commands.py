@@ -172,3 +172,21 @@ def test_a_sheet_of_an_autoclaved_product_ends_at_the_hottest_temperature() -> N
     hottest = done.data()["ways"][0]["readings"][-1]
     assert hottest["temperature_c"] == 121.0
     assert 0.0 < hottest["slope_per_k"] < 0.02
+
+
+def test_a_batch_without_room_for_water_is_refused() -> None:
+    full = ("--concentration", "10", "--ph", "14", "--volume", "1")
+    done = formbuf("batch-sheet", "--system", "sodium_citrate", *full)
+    assert done.code == 3
+    assert "takes up more than the batch of 1 L" in done.err
+    thick = ("--concentration", "900", "--ph", "7.4", "--volume", "1")
+    done = formbuf("batch-sheet", "--system", "sodium_phosphate", *thick)
+    assert done.code == 0, done.err
+    assert "of the batch is water to add" in " ".join(done.out.split())
+
+
+def test_a_target_that_is_passed_without_any_agent_is_told() -> None:
+    made = ("--concentration", "100", "--ph", "6", "--volume", "1")
+    asked = ("--osmolality", "100", "--tonicity-agent", "sucrose")
+    done = formbuf("batch-sheet", "--system", "sodium_citrate", *made, *asked)
+    assert "above the 100 aimed at: none is added" in " ".join(done.out.split())

@@ -143,7 +143,7 @@ def test_a_pipe_of_any_name_is_written_to(tmp_path: Path) -> None:
 def test_an_entry_of_a_list_has_two_spellings(key: str) -> None:
     done = formbuf("scan", ANTIBODY, "--over", f"{key}=5", "--top", "1")
     assert done.code == 0
-    assert f",{key},rank," in done.out.splitlines()[0]
+    assert ",storage[1].temperature_c,rank," in done.out.splitlines()[0]
     wrong = key.replace("1", "9")
     refused = formbuf("scan", ANTIBODY, "--over", f"{wrong}=5").one_error()
     assert "storage[9].temperature_c: '9' is no entry" in refused

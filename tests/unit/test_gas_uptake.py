@@ -10,6 +10,7 @@ import pytest
 from formbuf import load_library
 from formbuf.advice.case import case_for
 from formbuf.advice.draw_candidate import draw_candidate, prepare_draws
+from formbuf.advice.none_arm import judge_none
 from formbuf.advice.sampling import Sampler
 from formbuf.advice.shortlist import shortlist
 from formbuf.advice.sizing import size, windows_of
@@ -154,3 +155,62 @@ def test_a_carbonate_buffer_is_screened_at_its_worst_temperature():
 
     assert "at 40 C, allowed" in said(5.0, 40.0)
     assert "at 25 C, allowed" in said(5.0)
+
+
+def test_more_acid_is_more_carbon_dioxide_too():
+    """What comes in at a temperature is linear in the load and in the pressure."""
+    budget = case(5.0).loads
+    for factor in (0.5, 3.0):
+        moved = budget.scaled(factor, 1.0)
+        assert moved.acid_mmol_l == pytest.approx(factor * budget.acid_mmol_l)
+        assert moved.base_mmol_l == budget.base_mmol_l
+        more = budget.more_acid_mmol_l(8.3, 5.0)
+        assert more > 0.1
+        assert moved.more_acid_mmol_l(8.3, 5.0) == pytest.approx(factor * more)
+
+
+WEAK_ACID = {
+    "kind": "small_molecule",
+    "concentration_mg_ml": 1.5,
+    "molar_mass_g_mol": 300.0,
+    "counter_ion": "sodium",
+    "pka": [{"pka": 8.3, "acid_charge": 0, "dh_kj_mol": 50.0}],
+}
+
+
+def test_the_product_without_buffer_meets_the_cold_as_a_buffer_does():
+    """Its charges do not move with temperature, its pH and the uptake at it do.
+
+    So it carries as much at 5 C as at 25 C, against the load that 5 C brings.
+    """
+    warm, cold = (case(t, drug=WEAK_ACID) for t in (25.0, 5.0))
+    held = judge_none(warm).carried_share * warm.loads.acid_mmol_l
+    found = judge_none(cold)
+    bare = make(
+        LIBRARY,
+        LIBRARY.systems["none"],
+        1.0,
+        cold.brief.ph.target - cold.brief.ph.release_tolerance,
+        25.0,
+        cold.background,
+        cold.law,
+    ).mixture
+    windows = windows_of(cold.brief)
+    low = float(bare.solve(5.0).ph) - windows.room_low
+    load = cold.loads.acid_mmol_l + float(cold.loads.more_acid_mmol_l(low, 5.0))
+
+    assert load > 1.5 * warm.loads.acid_mmol_l
+    assert found.carried_share == pytest.approx(held / load, rel=0.05)
+    assert any("takes up" in note for note in found.notes)
+
+
+def test_a_trace_of_carbon_dioxide_is_no_load():
+    acid = {"target": 4.0, "low": 3.7, "high": 4.3}
+    none = {"acid_mmol_l": 0.0, "base_mmol_l": 0.0}
+    c = case(25.0, ph=acid, loads=none)
+
+    assert 0.0 < c.loads.acid_mmol_l < 1e-3
+    assert not c.loads.has_load
+    found = shortlist(brief(25.0, ph=acid, loads=none), LIBRARY)
+    assert any("no load to carry" in text for text in found.warnings)
+    assert "capacity" not in found.lead.criteria

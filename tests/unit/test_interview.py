@@ -206,7 +206,9 @@ def test_every_question_is_explained_and_worded_as_one() -> None:
     ("read", "text", "value"),
     [
         (readers.number, "6.5", 6.5),
-        (readers.number, " 10 mg/mL", 10.0),
+        (readers.number_in("mg/mL"), " 10 mg/mL", 10.0),
+        (readers.number_in("mL"), "0.5ml", 0.5),
+        (readers.number_in("mL"), " .5 ", 0.5),
         (readers.number, "-40", -40.0),
         (readers.numbers, "5 -40; 25 C", [5.0, -40.0, 25.0]),
         (readers.numbers, "5, 25", [5.0, 25.0]),
@@ -258,6 +260,11 @@ def test_answers_are_read(read, text: str, value: object) -> None:
     ("read", "text", "said"),
     [
         (readers.number, "6,5", "is no number"),
+        (readers.number, "1 per week", "is no number"),
+        (readers.number_in("mL"), "1 uL", "is not in mL"),
+        (readers.number_in("mL"), "10 L", "is not in mL"),
+        (readers.number_in("mL"), "3 4", "is no number"),
+        (readers.number_in("mL"), "50 to 60", "is not in mL"),
         (readers.number, "much", "is no number"),
         (readers.number, "nan", "is no number"),
         (readers.number, "1e999", "is no number"),

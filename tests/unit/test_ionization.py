@@ -127,3 +127,9 @@ def test_aggregates_that_release_no_proton_do_not_move_with_temperature() -> Non
 
     assert shift == pytest.approx([a.charge * move for a in borate.aggregates])
     assert log10_aggregate_constants(borate, np.zeros((4, 2))).shape == (4, 2, 2)
+
+
+def test_steps_may_come_as_lists() -> None:
+    listed = Ladder("x", 0, [4.7], [1.0], [0.0])  # type: ignore[arg-type]
+    assert listed == Ladder("x", 0, (4.7,), (1.0,), (0.0,))
+    assert pk_at(listed, 25.0).tolist() == [4.7]

@@ -251,3 +251,16 @@ def test_settings_of_the_user_that_fit_none_of_ours(
     with pytest.raises(InputError) as caught:
         _ = open_library(Store(knowledge_root(), tmp_path)).criteria
     assert said in caught.value.message
+
+
+def test_limits_of_the_user_that_do_not_rise_are_refused_at_load(
+    tmp_path: Path,
+) -> None:
+    """A ceiling below the usual range would size a buffer by it."""
+    root = knowledge_root()
+    header, *rows = root.joinpath("precedent.csv").read_text("utf-8").splitlines()
+    row = next(r for r in rows if r.startswith("citrate,subcutaneous,"))
+    changed = row.replace(",5,15,20,", ",5,15,4,", 1)
+    assert changed != row
+    with pytest.raises(InputError, match=r"precedent\.csv:2:.*is not rising"):
+        overlaid(tmp_path / "own", precedent=f"{header}\n{changed}\n")

@@ -15,7 +15,7 @@ from formbuf.output.serialise import shortlist_dict
 from formbuf.product.brief import brief_from_mapping, complete
 
 LIBRARY = load_library()
-SAID = "no load stated: capacity does not tell the candidates apart"
+SAID = "no load to carry: capacity does not tell the candidates apart"
 
 
 def brief(load_mmol_l=0.0, **changes):

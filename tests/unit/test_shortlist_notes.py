@@ -137,6 +137,7 @@ def precedent_overlay(folder: Path) -> Library:
     by_key = {(row["species"], row["route"]): row for row in rows}
     same = by_key["histidine", "subcutaneous"]
     tris = {**by_key["tris", "subcutaneous"], "ceiling_mmol_l": "12"}
+    tris["usual_high_mmol_l"] = "10"
     same = {**same, "ceiling_mmol_l": f"{float(same['ceiling_mmol_l']):.2f}"}
     new = {**by_key["tris", "subcutaneous"], "route": "intra_articular"}
     overlay(folder, "precedent.csv", [same, tris, new])
@@ -391,6 +392,13 @@ def test_a_product_that_stands_without_a_buffer_leads_the_verdict() -> None:
     data = shortlist_dict(result)
     assert data["verdict"] == result.verdict
     assert data["lead"] is None
+
+
+def test_a_product_of_which_nothing_is_known_is_open() -> None:
+    result = run(drug={"kind": "small_molecule"}, exclude=BUFFERS)
+    assert result.verdict.startswith("No buffer is acceptable: every buffer system")
+    assert "Whether the product stands without one is open" in result.verdict
+    assert "viable" not in result.verdict
 
 
 def test_a_product_that_carries_too_little_is_not_called_viable() -> None:

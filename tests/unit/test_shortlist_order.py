@@ -147,7 +147,7 @@ def test_an_excluded_ion_of_the_tonicity_agent_is_named() -> None:
 def test_no_load_at_all_is_said() -> None:
     loads = {"acid_mmol_l": 0.0, "base_mmol_l": 0.0}
     result = run(loads=loads, container={"type": "tube"})
-    assert any("no load stated: capacity" in w for w in result.warnings)
+    assert any("no load to carry: capacity" in w for w in result.warnings)
     assert not any("no acid or base load was stated" in w for w in result.warnings)
 
 
