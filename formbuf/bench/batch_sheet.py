@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 import numpy as np
 
 from formbuf.bench import batch_errors, batch_steps
@@ -89,6 +91,7 @@ def batch_sheet(
         for sheet in sheets
         if sheet.sums.water_g < LITTLE_WATER * sheet.sums.batch_g
     ]
+    notes += _excluded(bench, sheets)
     target = bench.background.target_mosm_kg
     over = max(sheet.osmolality_mosm_kg for sheet in sheets)
     if target is not None and over > target + OVERFULL_MOSM_KG:
@@ -109,6 +112,25 @@ def batch_sheet(
         _mole_ratio(bench, ways[0].made),
         tuple(dict.fromkeys(notes)),
     )
+
+
+def _excluded(bench: Bench, sheets: Sequence[WaySheet]) -> list[str]:
+    """Name what a sheet weighs or adjusts with although the brief excludes it."""
+    barred = set(bench.excluded)
+    found: dict[str, None] = {}
+    for sheet in sheets:
+        used = [line.material for line in sheet.lines if line.role != "drug"]
+        used += [
+            sheet.allowance.acid_grade.material,
+            sheet.allowance.base_grade.material,
+        ]
+        for key in used:
+            material = bench.library.materials.get(key)
+            if material and barred & {key, *material.contents}:
+                found[material.name] = None
+    if not found:
+        return []
+    return [f"the brief excludes what this sheet uses: {', '.join(found)}"]
 
 
 def _check_size(volume_l: float | None, mass_kg: float | None) -> None:

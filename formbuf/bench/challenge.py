@@ -154,6 +154,13 @@ def challenge(
         *bench.notes,
         *made.mixture.notes,
     ]
+    out = [r for r in rooms if r.acid_mmol_l < 0.0 or r.base_mmol_l < 0.0]
+    if out:
+        notes.append(
+            f"at {out[0].temperature_c:g} C it stands at pH {out[0].ph:.2f}, outside "
+            f"{out[0].low_ph:.2f} to {out[0].high_ph:.2f}, before anything is added: a "
+            "negative amount is what would bring it back to that limit"
+        )
     if bench.uncounted:
         notes.append(
             "the columns without buffer are those of water and excipients, not of this "

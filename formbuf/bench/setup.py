@@ -66,6 +66,8 @@ class Bench:
         made to the target.
     uncounted : str
         ``protein`` or ``drug`` where what it buffers is not known and left out.
+    excluded : tuple of str
+        What the brief wants in no formula: materials, species, ions.
     """
 
     library: Library
@@ -85,6 +87,7 @@ class Bench:
     notes: tuple[str, ...] = ()
     given_mmol_l: Mapping[str, float] | None = None
     uncounted: str = ""
+    excluded: tuple[str, ...] = ()
 
     @property
     def storage_temperatures_c(self) -> tuple[float, ...]:
@@ -162,6 +165,7 @@ def bench_from_brief(
         brief.carbon_dioxide,
         completed.warnings,
         uncounted=uncounted,
+        excluded=tuple(brief.exclude),
     )
 
 

@@ -190,3 +190,30 @@ def test_a_target_that_is_passed_without_any_agent_is_told() -> None:
     asked = ("--osmolality", "100", "--tonicity-agent", "sucrose")
     done = formbuf("batch-sheet", "--system", "sodium_citrate", *made, *asked)
     assert "above the 100 aimed at: none is added" in " ".join(done.out.split())
+
+
+def test_what_the_brief_excludes_is_named_on_the_sheet(tmp_path: Path) -> None:
+    path = tmp_path / "brief.toml"
+    text = Path(ANTIBODY).read_text("utf-8")
+    path.write_text('exclude = ["hydrochloric_acid"]\n' + text, "utf-8")
+    made = ("--system", "histidine_hydrochloride", "--volume", "1")
+    said = "the brief excludes what this sheet uses: hydrochloric acid"
+    assert said in " ".join(formbuf("batch-sheet", str(path), *made).out.split())
+    assert said not in " ".join(formbuf("batch-sheet", ANTIBODY, *made).out.split())
+
+
+def test_a_formula_outside_its_window_is_told_before_it_is_challenged(
+    tmp_path: Path,
+) -> None:
+    path = tmp_path / "brief.toml"
+    path.write_text(
+        '[product]\nroute = "subcutaneous"\n[ph]\ntarget = 6.0\n[[candidate]]\n'
+        'name = "A"\nmaterials = { citric_acid_monohydrate = 5, '
+        "trisodium_citrate_dihydrate = 5 }\n",
+        "utf-8",
+    )
+    done = formbuf("challenge", str(path), "--system", "A")
+    assert done.code == 0, done.err
+    assert "outside 5.70 to 6.30, before anything is added" in " ".join(
+        done.out.split()
+    )
