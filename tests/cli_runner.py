@@ -68,8 +68,19 @@ def process(
     *args: str, stdin: int = subprocess.DEVNULL, **environment: str
 ) -> subprocess.CompletedProcess[str]:
     """Run the command line as a process of its own."""
+    return _interpreter("-m", "formbuf", *args, stdin=stdin, **environment)
+
+
+def python(code: str, **environment: str) -> subprocess.CompletedProcess[str]:
+    """Run some lines of Python as a process of its own."""
+    return _interpreter("-c", code, stdin=None, **environment)
+
+
+def _interpreter(
+    *args: str, stdin: int | None, **environment: str
+) -> subprocess.CompletedProcess[str]:
     return subprocess.run(
-        [sys.executable, "-m", "formbuf", *args],
+        [sys.executable, *args],
         capture_output=True,
         text=True,
         check=False,

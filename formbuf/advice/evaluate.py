@@ -20,18 +20,19 @@ from formbuf.chemistry.osmolality import OsmoticLaw
 from formbuf.constants import (
     IONIZATION_HIGH_C,
     IONIZATION_LOW_C,
-    LIQUID_HIGH_C,
-    LIQUID_LOW_C,
 )
 from formbuf.library import Library
 from formbuf.product.composition import Mixture, mixture
-from formbuf.product.liquid import acidities_mmol_l, liquid_temperatures
+from formbuf.product.liquid import (
+    acidities_mmol_l,
+    liquid_temperatures,
+    slope_ends_c,
+)
 from formbuf.product.product_brief import ProductBrief
 from formbuf.product.recipe import Recipe, weighed
 
 Array = NDArray[np.float64]
 
-SLOPE_STEP_K = 0.5
 STRONG_BASES = ("sodium_hydroxide", "potassium_hydroxide")
 STRONG_ACIDS = ("hydrochloric_acid",)
 NO_TITRANT: Mapping[str, float] = MappingProxyType({})
@@ -119,9 +120,7 @@ def evaluate(
     """
     temperatures = liquid_temperatures(brief)
     at = np.array(list(temperatures))
-    warmer = np.minimum(at + SLOPE_STEP_K, LIQUID_HIGH_C)
-    cooler = np.maximum(at - SLOPE_STEP_K, LIQUID_LOW_C)
-    many = np.concatenate([at, warmer, cooler])
+    many = np.concatenate([at, *slope_ends_c(at)])
     solution = whole.solve(many)
     measure = list(temperatures).index(brief.ph.measure_temperature_c)
     own = [whole.index(name) for name in species if whole.index(name) >= 0]
@@ -217,10 +216,8 @@ def _states(
     water = 1000.0 * float(whole.water_kg_l)
     total = capacity_mol_kg_ph(single) * water
     shares = component_capacity_mol_kg_ph(single)[:, own].sum(axis=-1) * water
-    slope = (ph[n : 2 * n] - ph[2 * n :]) / (
-        np.minimum(at + SLOPE_STEP_K, LIQUID_HIGH_C)
-        - np.maximum(at - SLOPE_STEP_K, LIQUID_LOW_C)
-    )
+    warmer, cooler = slope_ends_c(at)
+    slope = (ph[n : 2 * n] - ph[2 * n :]) / (warmer - cooler)
     return tuple(
         LiquidState(
             float(t),

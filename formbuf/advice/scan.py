@@ -9,7 +9,7 @@ from typing import Any
 
 from formbuf.advice.confidence import with_confidence
 from formbuf.advice.results import Candidate, Shortlist
-from formbuf.advice.scan_grid import Grid, Value, bracketed, dotted
+from formbuf.advice.scan_grid import Grid, Value, dotted
 from formbuf.advice.shortlist import shortlist
 from formbuf.errors import ConvergenceError, InputError
 from formbuf.library import Library
@@ -204,7 +204,6 @@ def _move_target(data: dict[str, Any], value: Value) -> None:
 
 def _put(data: dict[str, Any], key: str, value: Value) -> None:
     *tables, last = dotted(key).split(".")
-    key = bracketed(key)
     place: Any = data
     for name in tables:
         if isinstance(place, list):

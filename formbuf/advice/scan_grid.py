@@ -92,7 +92,7 @@ def parse_axis(text: str) -> Axis:
     if len({(type(value), value) for value in values}) < len(values):
         msg = f"--over: {text!r} names a value twice, allowed each once"
         raise InputError(msg)
-    return Axis(bracketed(dotted(key)), values)
+    return Axis(bracketed(key), values)
 
 
 def dotted(key: str) -> str:
@@ -114,7 +114,7 @@ def bracketed(key: str) -> str:
     >>> bracketed("storage.1.temperature_c"), bracketed("loads.acid_mmol_l")
     ('storage[1].temperature_c', 'loads.acid_mmol_l')
     """
-    return re.sub(r"\.(\d+)(?=\.|$)", r"[\1]", key)
+    return re.sub(r"\.(\d+)(?=[.\[]|$)", r"[\1]", key)
 
 
 def grid_of(axes: Sequence[Axis]) -> Grid:
@@ -128,10 +128,10 @@ def grid_of(axes: Sequence[Axis]) -> Grid:
     if not axes:
         msg = f"a scan needs at least one --over, allowed {FORM}"
         raise InputError(msg)
-    keys = [dotted(axis.key) for axis in axes]
+    keys = [axis.key for axis in axes]
     for key in keys:
         if keys.count(key) > 1:
-            msg = f"--over: {bracketed(key)} is varied twice, allowed once"
+            msg = f"--over: {key} is varied twice, allowed once"
             raise InputError(msg)
     grid = Grid(tuple(axes))
     if grid.size > MOST_POINTS:

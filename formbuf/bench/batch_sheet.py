@@ -21,12 +21,12 @@ from formbuf.bench.setup import ROOM_C, Bench, Made, make_product
 from formbuf.bench.ways import Way, ways_of, with_hydrates_in_hand
 from formbuf.chemistry.capacity import capacity_mol_kg_ph
 from formbuf.chemistry.speciation import water_ions
-from formbuf.constants import LIQUID_HIGH_C, LIQUID_LOW_C, WATER_MOLAR_MASS_KG_MOL
+from formbuf.constants import WATER_MOLAR_MASS_KG_MOL
 from formbuf.errors import InputError
 from formbuf.product.composition import Extra
+from formbuf.product.liquid import slope_ends_c
 
 LEAST_BATCH_L, MOST_BATCH_L = 1e-6, 1e6
-SLOPE_STEP_K = 0.5
 #: Share of the batch below which the water to add is too little to work with (practice).
 LITTLE_WATER = 0.5
 #: Osmolality above the target from which it is worth a word [mosmol/kg].
@@ -116,7 +116,6 @@ def batch_sheet(
 
 def _excluded(bench: Bench, sheets: Sequence[WaySheet]) -> list[str]:
     """Name what a sheet weighs or adjusts with although the brief excludes it."""
-    barred = set(bench.excluded)
     found: dict[str, None] = {}
     for sheet in sheets:
         used = [line.material for line in sheet.lines if line.role != "drug"]
@@ -126,7 +125,7 @@ def _excluded(bench: Bench, sheets: Sequence[WaySheet]) -> list[str]:
         ]
         for key in used:
             material = bench.library.materials.get(key)
-            if material and barred & {key, *material.contents}:
+            if material and material.named_in(bench.excluded):
                 found[material.name] = None
     if not found:
         return []
@@ -258,8 +257,7 @@ def _readings(bench: Bench, made: Made) -> tuple[Reading, ...]:
     kinds.setdefault(ROOM_C, [])
     at = np.array(sorted(kinds))
     ph = made.mixture.solve(at).ph
-    warmer = np.minimum(at + SLOPE_STEP_K, LIQUID_HIGH_C)
-    cooler = np.maximum(at - SLOPE_STEP_K, LIQUID_LOW_C)
+    warmer, cooler = slope_ends_c(at)
     rise = made.mixture.solve(warmer).ph - made.mixture.solve(cooler).ph
     slope = rise / (warmer - cooler)
     return tuple(

@@ -7,7 +7,7 @@ basis is practice, judgement or memory.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from typing import Literal
 
@@ -221,6 +221,10 @@ class Material:
     modelled: bool = True
     note: str = ""
     overlay: bool = False
+
+    def named_in(self, names: Iterable[str]) -> set[str]:
+        """Return those of some names that mean the material or what it holds."""
+        return {self.id, *self.contents}.intersection(names)
 
 
 @dataclass(frozen=True, slots=True)

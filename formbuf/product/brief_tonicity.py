@@ -108,7 +108,7 @@ def _free_agent(filler: Filler) -> Case | None:
 def _barred(filler: Filler, case: Case) -> set[str]:
     """Return what the brief excludes of a default agent, itself or what it holds."""
     material = filler.library.materials[str(case.value)]
-    return set(filler.brief.exclude) & {material.id, *material.contents}
+    return material.named_in(filler.brief.exclude)
 
 
 def _amorphous_sugar(

@@ -47,12 +47,16 @@ def fault(what: str, allowed: str, hint: str = "") -> InputError:
     return InputError(f"{what}; allowed: {allowed}", hint=hint)
 
 
+def _no_number(text: str, allowed: str) -> InputError:
+    hint = "Decimals have a point: 6.5, not 6,5." if "," in text else ""
+    return fault(f"{text!r} is no number", allowed, hint)
+
+
 def number(text: str) -> float:
     """Return a plain decimal number."""
     bare = text.strip()
     if not _NUMBER.fullmatch(bare):
-        hint = "Decimals have a point: 6.5, not 6,5." if "," in text else ""
-        raise fault(f"{bare!r} is no number", "a number alone, such as 6.5", hint)
+        raise _no_number(bare, "a number alone, such as 6.5")
     return float(bare)
 
 
@@ -142,8 +146,7 @@ def numbers(text: str) -> list[float]:
         raise fault("there is no number", allowed)
     for part in kept:
         if not _NUMBER.fullmatch(part):
-            hint = "Decimals have a point: 6.5, not 6,5." if "," in part else ""
-            raise fault(f"{part!r} is no number", allowed, hint)
+            raise _no_number(part, allowed)
     return list(dict.fromkeys(number(part) for part in kept))
 
 

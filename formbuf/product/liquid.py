@@ -9,6 +9,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from formbuf.chemistry.equilibrium import Solution
 from formbuf.chemistry.titration import STRONG_ACID, STRONG_BASE
+from formbuf.constants import LIQUID_HIGH_C, LIQUID_LOW_C
 from formbuf.product.composition import Mixture
 from formbuf.product.product_brief import ProductBrief
 
@@ -17,6 +18,8 @@ Array = NDArray[np.float64]
 PHYSIOLOGICAL_PH = 7.4
 #: Least liquid temperature at which pH is reported; colder is frozen or extrapolated.
 COLDEST_LIQUID_C = -20.0
+#: Either way from a temperature, over which the slope of pH with it is taken [K].
+SLOPE_STEP_K = 0.5
 
 
 def liquid_temperatures(brief: ProductBrief) -> dict[float, tuple[str, ...]]:
@@ -30,6 +33,14 @@ def liquid_temperatures(brief: ProductBrief) -> dict[float, tuple[str, ...]]:
             if entry.kind not in kinds:
                 kinds.append(entry.kind)
     return {t: tuple(found[t]) for t in sorted(found)}
+
+
+def slope_ends_c(temperature_c: Array) -> tuple[Array, Array]:
+    """Temperatures a little warmer and cooler, within what can be computed [C]."""
+    return (
+        np.minimum(temperature_c + SLOPE_STEP_K, LIQUID_HIGH_C),
+        np.maximum(temperature_c - SLOPE_STEP_K, LIQUID_LOW_C),
+    )
 
 
 def titratable_acidity_mmol_l(

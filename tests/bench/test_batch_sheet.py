@@ -104,7 +104,8 @@ def test_both_ways_end_in_the_same_product(system: str) -> None:
     assert not forms.way.titrants
     assert titrant.way.id == "titrant"
     assert len(titrant.way.titrants) == 1
-    assert components[0] == pytest.approx(components[1], rel=2e-3)
+    # found within 7e-5: the volume of the titrant leaves a little less water
+    assert components[0] == pytest.approx(components[1], rel=2e-4)
     assert not forms.way.by_product
     assert not titrant.way.by_product
 

@@ -9,7 +9,7 @@ from collections.abc import Iterator
 from typing import Any
 
 import pytest
-from cli_runner import ROOT, clean_environment
+from cli_runner import ROOT, clean_environment, python
 
 from formbuf.cli import main
 from formbuf.cli.complete import BY_METAVAR, first_column, tables
@@ -102,14 +102,7 @@ def test_nothing_heavy_is_imported() -> None:
         "run([])\n"
         "print('LOADED', *sys.modules)\n"
     )
-    done = subprocess.run(
-        [sys.executable, "-c", code],
-        capture_output=True,
-        text=True,
-        check=False,
-        cwd=ROOT,
-        env=clean_environment({}),
-    )
+    done = python(code)
     loaded = done.stdout.partition("LOADED ")[2].split()
     assert loaded
     assert not {"numpy", "scipy", "pandas", "rich.console"} & set(loaded)

@@ -16,7 +16,7 @@ from collections.abc import Callable
 from pathlib import Path
 
 import pytest
-from cli_runner import EXAMPLES, ROOT, clean_environment, formbuf, process
+from cli_runner import EXAMPLES, clean_environment, formbuf, process, python
 
 #: Long: left out of the everyday run.
 pytestmark = pytest.mark.slow
@@ -198,13 +198,7 @@ def test_a_working_directory_that_is_gone(tmp_path: Path) -> None:
         f"shutil.rmtree({str(gone)!r}); from formbuf.__main__ import start; "
         f"sys.argv = ['formbuf', *{QUICK!r}]; sys.exit(start())"
     )
-    done = subprocess.run(
-        [sys.executable, "-c", code],
-        capture_output=True,
-        text=True,
-        check=False,
-        env=clean_environment({}),
-    )
+    done = python(code)
     assert done.returncode == 0, done.stderr
     assert "Traceback" not in done.stderr
 
@@ -271,13 +265,7 @@ def test_a_locale_with_a_decimal_comma(tmp_path: Path) -> None:
         "assert locale.localeconv()['decimal_point'] == ','\n"
         f"from formbuf.cli.main import run; sys.exit(run({[*QUICK, '--json']!r}))\n"
     )
-    done = subprocess.run(
-        [sys.executable, "-c", code],
-        capture_output=True,
-        text=True,
-        check=False,
-        env=clean_environment({"LOCPATH": str(tmp_path)}),
-    )
+    done = python(code, LOCPATH=str(tmp_path))
     assert done.returncode == 0, done.stderr
     assert json.loads(done.stdout) == formbuf(*QUICK, "--json").data()
 
@@ -296,14 +284,7 @@ def test_too_little_memory_is_told_or_enough() -> None:
         "sys.stderr.write(f'{mb:.0f}')\n"
         "sys.exit(code)\n"
     )
-    done = subprocess.run(
-        [sys.executable, "-c", code],
-        capture_output=True,
-        text=True,
-        check=False,
-        cwd=ROOT,
-        env=clean_environment({}),
-    )
+    done = python(code)
     assert done.returncode == 0
     print(f"resident memory of a shortlist: {done.stderr} MB")
     assert int(done.stderr) < 500

@@ -3,38 +3,22 @@
 from __future__ import annotations
 
 from pathlib import Path
-from typing import Any
 
 import pytest
+from brief_support import HEAD, assumed_values, completed_text, quick_brief
 
 from formbuf.errors import InputError, KnowledgeError
 from formbuf.library import Library, load_library
 from formbuf.product.brief import (
-    Completed,
-    brief_from_options,
     brief_from_text,
     complete,
 )
 from formbuf.product.brief_filler import Filler
 
-HEAD = '[product]\nroute = "subcutaneous"\n[ph]\ntarget = 6.0\n'
-
 
 @pytest.fixture(scope="module")
 def library() -> Library:
     return load_library()
-
-
-def _complete(text: str, library: Library) -> Completed:
-    return complete(brief_from_text(text), library)
-
-
-def _quick(library: Library, **options: Any) -> Completed:
-    return complete(brief_from_options(**({"ph": 6.0} | options)), library)
-
-
-def _assumed(completed: Completed) -> dict[str, Any]:
-    return {row.key: row.value for row in completed.assumptions}
 
 
 # ---------------------------------------------------------------- amounts
@@ -47,7 +31,7 @@ def _assumed(completed: Completed) -> dict[str, Any]:
 def test_units_of_amounts_agree(amount: str, library: Library) -> None:
     # Sucrose 342.297 g/mol (IUPAC 2021 abridged weights): 80 g/L is 233.715 mmol/L.
     text = HEAD + f'[[excipient]]\nmaterial = "sucrose"\n{amount}\n'
-    row = _complete(text, library).brief.excipient[0]
+    row = completed_text(text, library).brief.excipient[0]
     assert row.mmol_l == pytest.approx(80.0 / 342.297 * 1000.0, rel=1e-6)
     assert row.g_l == pytest.approx(80.0, rel=1e-6)
     assert row.stated == float(amount.split("=")[1])
@@ -55,22 +39,25 @@ def test_units_of_amounts_agree(amount: str, library: Library) -> None:
 
 def test_hydrates_are_weighed_as_they_are(library: Library) -> None:
     text = HEAD + '[[excipient]]\nmaterial = "trehalose_dihydrate"\nmg_ml = 37.8327\n'
-    row = _complete(text, library).brief.excipient[0]
+    row = completed_text(text, library).brief.excipient[0]
     assert row.mmol_l == pytest.approx(100.0, rel=1e-4)
 
 
 def test_materials_by_formula_or_name(library: Library) -> None:
     for name in ("NaCl", "sodium chloride", "sodium_chloride"):
         text = HEAD + f'[[excipient]]\nmaterial = "{name}"\nmmol_l = 50\n'
-        assert _complete(text, library).brief.excipient[0].material == "sodium_chloride"
+        assert (
+            completed_text(text, library).brief.excipient[0].material
+            == "sodium_chloride"
+        )
 
 
 def test_drug_concentrations(library: Library) -> None:
     tail = "[drug]\nconcentration_mg_ml = 5\nmolar_mass_g_mol = 250\n"
-    drug = _complete(HEAD + tail, library).brief.drug
+    drug = completed_text(HEAD + tail, library).brief.drug
     assert drug.concentration_mmol_l == pytest.approx(20.0)
     tail = "[drug]\nconcentration_mmol_l = 20\nmolar_mass_g_mol = 250\n"
-    drug = _complete(HEAD + tail, library).brief.drug
+    drug = completed_text(HEAD + tail, library).brief.drug
     assert drug.concentration_mg_ml == pytest.approx(5.0)
 
 
@@ -79,7 +66,7 @@ def test_drug_steps_are_sorted_by_pk(library: Library) -> None:
         "[[drug.pka]]\npka = 9.1\nacid_charge = 0\n"
         "[[drug.pka]]\npka = 2.3\nacid_charge = 1\n"
     )
-    completed = _complete(HEAD + tail, library)
+    completed = completed_text(HEAD + tail, library)
     assert [step.pka for step in completed.brief.drug.pka] == [2.3, 9.1]
     assert any("without a concentration" in line for line in completed.warnings)
 
@@ -90,7 +77,7 @@ def test_own_formulas_get_material_ids(library: Library) -> None:
         '[[candidate]]\nsystem = "none"\n'
         '[[candidate]]\nsystem = "sodium_acetate"\nconcentration_mmol_l = 10\n'
     )
-    mine, without, acetate = _complete(HEAD + tail, library).brief.candidate
+    mine, without, acetate = completed_text(HEAD + tail, library).brief.candidate
     assert dict(mine.materials) == {"l_histidine": 12.0, "sodium_chloride": 100.0}
     assert without.system == "none"
     assert acetate.name == "sodium acetate, 10 mmol/L"
@@ -137,7 +124,7 @@ mg_ml = 1
 
 
 def test_own_rows_lie_on_top_and_are_marked(library: Library) -> None:
-    completed = _complete('require = ["ours"]\n' + HEAD + OWN, library)
+    completed = completed_text('require = ["ours"]\n' + HEAD + OWN, library)
     wide = completed.library
     ours = wide.species["ours"]
     assert ours.overlay
@@ -146,7 +133,7 @@ def test_own_rows_lie_on_top_and_are_marked(library: Library) -> None:
     assert ours.steps[0].pka.uncertainty == 0.02
     assert wide.species["tris"].steps[0].pka.value == 8.1
     assert wide.species["tris"].cas == library.species["tris"].cas
-    assert _assumed(completed)["species.pka_uncertainty"] == 0.05
+    assert assumed_values(completed)["species.pka_uncertainty"] == 0.05
     source = wide.sources[ours.steps[0].pka.source]
     assert source.title == "in-house report 12"
     assert source.overlay
@@ -159,7 +146,7 @@ def test_own_rows_lie_on_top_and_are_marked(library: Library) -> None:
 
 
 def test_no_own_rows_leave_the_library_alone(library: Library) -> None:
-    assert _complete(HEAD, library).library is library
+    assert completed_text(HEAD, library).library is library
 
 
 # ---------------------------------------------------------------- notices
@@ -181,11 +168,11 @@ def test_no_own_rows_leave_the_library_alone(library: Library) -> None:
     ],
 )
 def test_notices(text: str, words: str, library: Library) -> None:
-    assert any(words in line for line in _complete(text, library).warnings)
+    assert any(words in line for line in completed_text(text, library).warnings)
 
 
 def test_an_ordinary_brief_has_no_notices(library: Library) -> None:
-    quick = _quick(library, route="subcutaneous", drug_kind="small_molecule")
+    quick = quick_brief(library, route="subcutaneous", drug_kind="small_molecule")
     assert quick.warnings == ()
 
 
@@ -198,7 +185,7 @@ def test_overrides_anchors_and_facts_reach_the_completed_brief(
         "[ranking.anchors.capacity]\nfull = 3\n"
         "[facts]\npolysorbate = true\niron_ug_l = 12\n"
     )
-    completed = _complete(HEAD + tail, library)
+    completed = completed_text(HEAD + tail, library)
     row = completed.brief.override[0]
     assert (row.rule, row.system, row.name) == ("R027", "sodium_phosphate", "N. N.")
     assert completed.brief.ranking.anchors["capacity"].full == 3.0

@@ -9,15 +9,20 @@ from pathlib import Path
 from typing import Any
 
 import pytest
+from brief_support import (
+    DRIED,
+    HEAD,
+    WITHOUT_SUCROSE,
+    assumed_values,
+    completed_text,
+    quick_brief,
+)
 
 from formbuf.library import Library, load_library
 from formbuf.library.records import BASES, SOURCELESS
 from formbuf.product import vocabulary
 from formbuf.product.brief import (
-    Completed,
     brief_from_mapping,
-    brief_from_options,
-    brief_from_text,
     complete,
     read_brief,
 )
@@ -26,26 +31,11 @@ from formbuf.product.brief_filler import Filler
 
 ROOT = Path(__file__).resolve().parents[2]
 EXAMPLES = sorted((ROOT / "examples").glob("*.toml"))
-HEAD = '[product]\nroute = "subcutaneous"\n[ph]\ntarget = 6.0\n'
-DRIED = HEAD.replace('"\n[ph]', '"\nform = "dried"\n[ph]')
-WITHOUT_SUCROSE = 'exclude = ["sucrose"]\n' + HEAD + '[drug]\nkind = "antibody"\n'
 
 
 @pytest.fixture(scope="module")
 def library() -> Library:
     return load_library()
-
-
-def _complete(text: str, library: Library) -> Completed:
-    return complete(brief_from_text(text), library)
-
-
-def _quick(library: Library, **options: Any) -> Completed:
-    return complete(brief_from_options(**({"ph": 6.0} | options)), library)
-
-
-def _assumed(completed: Completed) -> dict[str, Any]:
-    return {row.key: row.value for row in completed.assumptions}
 
 
 # ---------------------------------------------------------------- defaults
@@ -89,18 +79,18 @@ def test_every_default_is_used_by_some_brief(library: Library) -> None:
         for route in vocabulary.ROUTES:
             for form in typing.get_args(vocabulary.Form):
                 for kind in vocabulary.KIND_GROUPS:
-                    _quick(library, route=route, form=form, drug_kind=kind)
+                    quick_brief(library, route=route, form=form, drug_kind=kind)
         for volume_ml in (1.0, 1000.0):
-            _quick(library, route="intravenous", volume_ml=volume_ml)
+            quick_brief(library, route="intravenous", volume_ml=volume_ml)
         for population in vocabulary.AGE_BANDS:
             product = {"route": "nasal", "population": population}
             patient = {"product": product, "ph": {"target": 6}}
             complete(brief_from_mapping(patient), library)
-        _complete('exclude = ["sodium"]\n' + HEAD, library)
-        _complete(WITHOUT_SUCROSE, library)
-        _complete('exclude = ["mannitol"]\n' + DRIED, library)
-        _complete(HEAD + '[drug]\ncounter_ion = "chloride"\n', library)
-        _complete(
+        completed_text('exclude = ["sodium"]\n' + HEAD, library)
+        completed_text(WITHOUT_SUCROSE, library)
+        completed_text('exclude = ["mannitol"]\n' + DRIED, library)
+        completed_text(HEAD + '[drug]\ncounter_ion = "chloride"\n', library)
+        completed_text(
             HEAD + '[[species]]\nid = "a"\nsource = "report"\n'
             "step = [{pka = 6, acid_charge = 1}]\n",
             library,
@@ -114,7 +104,7 @@ def test_every_default_is_used_by_some_brief(library: Library) -> None:
 def test_completion_of_every_route_form_and_kind(route: str, library: Library) -> None:
     for form in typing.get_args(vocabulary.Form):
         for kind in vocabulary.KIND_GROUPS:
-            completed = _quick(library, route=route, form=form, drug_kind=kind)
+            completed = quick_brief(library, route=route, form=form, drug_kind=kind)
             brief = completed.brief
             low, high = brief.ph.low, brief.ph.high
             tolerance = brief.ph.release_tolerance
@@ -138,14 +128,14 @@ def test_completion_of_every_route_form_and_kind(route: str, library: Library) -
 
 
 def test_every_assumption_has_reason_and_basis(library: Library) -> None:
-    for row in _quick(library, route="ophthalmic_topical").assumptions:
+    for row in quick_brief(library, route="ophthalmic_topical").assumptions:
         assert len(row.reason) > 10
         assert row.basis in BASES
         assert row.source == "" or row.source in library.sources
 
 
 def test_plain_defaults_of_an_injected_antibody(library: Library) -> None:
-    completed = _quick(library, route="subcutaneous", drug_kind="antibody")
+    completed = quick_brief(library, route="subcutaneous", drug_kind="antibody")
     brief = completed.brief
     assert (brief.ph.low, brief.ph.high) == (5.7, 6.3)
     assert brief.ph.release_tolerance == 0.1
@@ -220,43 +210,43 @@ def test_defaults_by_route_form_and_kind(
     stored_c: float,
     library: Library,
 ) -> None:
-    brief = _quick(library, **({"drug_kind": "small_molecule"} | options)).brief
+    brief = quick_brief(library, **({"drug_kind": "small_molecule"} | options)).brief
     assert brief.tonicity.agent == agent
     assert brief.container.type == container
     assert brief.temperatures_c(kind="storage") == (stored_c,)
 
 
 def test_routes_without_osmolality_limits_get_no_target(library: Library) -> None:
-    brief = _quick(library, route="oral_liquid").brief
+    brief = quick_brief(library, route="oral_liquid").brief
     assert brief.tonicity.target_mosm_kg is None
     assert brief.tonicity.agent is None
     assert not brief.tonicity.fill
-    asked = _quick(library, route="oral_liquid", tonicity_agent="glycerol").brief
+    asked = quick_brief(library, route="oral_liquid", tonicity_agent="glycerol").brief
     assert asked.tonicity.target_mosm_kg == 290.0
     assert asked.tonicity.fill
 
 
 def test_default_agent_respects_exclusions(library: Library) -> None:
     text = 'exclude = ["sodium"]\n' + HEAD
-    assert _complete(text, library).brief.tonicity.agent == "mannitol"
+    assert completed_text(text, library).brief.tonicity.agent == "mannitol"
 
 
 def test_target_moves_into_stated_limits(library: Library) -> None:
-    completed = _complete(HEAD + "[tonicity]\nlow_mosm_kg = 320\n", library)
+    completed = completed_text(HEAD + "[tonicity]\nlow_mosm_kg = 320\n", library)
     assert completed.brief.tonicity.target_mosm_kg == 320.0
-    assert _assumed(completed)["tonicity.target_mosm_kg"] == 320.0
+    assert assumed_values(completed)["tonicity.target_mosm_kg"] == 320.0
 
 
 def test_narrow_window_narrows_the_release_tolerance(library: Library) -> None:
-    completed = _complete(HEAD + "low = 5.9\nhigh = 6.3\n", library)
+    completed = completed_text(HEAD + "low = 5.9\nhigh = 6.3\n", library)
     assert completed.brief.ph.release_tolerance == pytest.approx(0.05)
-    assert _assumed(completed)["ph.release_tolerance"] == pytest.approx(0.05)
+    assert assumed_values(completed)["ph.release_tolerance"] == pytest.approx(0.05)
 
 
 def test_nothing_stated_is_assumed(library: Library) -> None:
     for path in EXAMPLES:
         stated = tomllib.loads(path.read_text(encoding="utf-8"))
-        for key in _assumed(complete(read_brief(path), library)):
+        for key in assumed_values(complete(read_brief(path), library)):
             table, _, name = key.partition(".")
             inside = stated.get(table, {})
             assert not (isinstance(inside, dict) and name in inside), (path.name, key)
@@ -272,26 +262,29 @@ def test_stated_values_survive(library: Library) -> None:
 
 
 def test_population_follows_from_age(library: Library) -> None:
-    completed = _complete(HEAD + "[dose]\nage_years = 1\n", library)
+    completed = completed_text(HEAD + "[dose]\nage_years = 1\n", library)
     assert completed.brief.product.population == "infant"
     assert completed.brief.dose.body_mass_kg == 7.0
-    assert _assumed(completed)["product.population"] == "infant"
+    assert assumed_values(completed)["product.population"] == "infant"
 
 
 def test_counted_alkali_means_glass(library: Library) -> None:
     text = (
         '[product]\nroute = "nasal"\n[ph]\ntarget = 6\n[container]\ncount_alkali = true'
     )
-    completed = _complete(text, library)
+    completed = completed_text(text, library)
     assert completed.brief.container.is_glass
-    assert "container.type" in _assumed(completed)
+    assert "container.type" in assumed_values(completed)
 
 
 def test_wall_of_an_assumed_plastic_is_not_known(library: Library) -> None:
-    assert _quick(library, route="nasal").brief.container.gas_permeable is None
+    assert quick_brief(library, route="nasal").brief.container.gas_permeable is None
     text = '[product]\nroute = "nasal"\n[ph]\ntarget = 6\n[container]\ntype = "plastic_bag"'
-    assert _complete(text, library).brief.container.gas_permeable is True
-    assert _quick(library, route="subcutaneous").brief.container.gas_permeable is False
+    assert completed_text(text, library).brief.container.gas_permeable is True
+    assert (
+        quick_brief(library, route="subcutaneous").brief.container.gas_permeable
+        is False
+    )
 
 
 @pytest.mark.parametrize(
@@ -305,18 +298,20 @@ def test_wall_of_an_assumed_plastic_is_not_known(library: Library) -> None:
 def test_large_volume(
     route: str, volume_ml: float, large: bool, library: Library
 ) -> None:
-    brief = _quick(library, route=route, volume_ml=volume_ml).brief
+    brief = quick_brief(library, route=route, volume_ml=volume_ml).brief
     assert brief.is_large_volume_intravenous == large
 
 
 def test_daily_volume_and_kind_groups(library: Library) -> None:
-    eye = _quick(library, route="ophthalmic_topical", drug_kind="vaccine").brief
+    eye = quick_brief(library, route="ophthalmic_topical", drug_kind="vaccine").brief
     assert eye.dose.volume_ml_day == pytest.approx(4 * 0.05)
     assert eye.drug.is_biologic
     assert not eye.drug.is_protein
     assert eye.drug.kind_group == "vaccine_or_vector"
     assert eye.route_group == "ophthalmic_topical"
-    rare = _complete(HEAD + "[dose]\nvolume_ml = 1\nper_day = 0.07\n", library).brief
+    rare = completed_text(
+        HEAD + "[dose]\nvolume_ml = 1\nper_day = 0.07\n", library
+    ).brief
     assert rare.dose.volume_ml_day == 1.0
 
 
@@ -342,7 +337,7 @@ def test_daily_volume_and_kind_groups(library: Library) -> None:
 def test_assumed_sugar(
     options: dict[str, Any], tail: str, percent: float, assumed: bool, library: Library
 ) -> None:
-    tonicity = _quick(library, route="subcutaneous", **options).brief.tonicity
+    tonicity = quick_brief(library, route="subcutaneous", **options).brief.tonicity
     assert tonicity.amorphous_sugar_percent_w_v == percent
     assert tonicity.amorphous_sugar_is_assumed == assumed
 
@@ -354,13 +349,13 @@ def test_stated_sugar_counts_as_it_is(library: Library) -> None:
         '[[excipient]]\nmaterial = "sucrose"\nmg_ml = 30\n'
         '[[excipient]]\nmaterial = "mannitol"\nmg_ml = 30\n'
     )
-    tonicity = _complete(text, library).brief.tonicity
+    tonicity = completed_text(text, library).brief.tonicity
     assert tonicity.amorphous_sugar_percent_w_v == pytest.approx(3.0)
     assert not tonicity.amorphous_sugar_is_assumed
 
 
 def test_open_states_follow_the_first_ice(library: Library) -> None:
-    brief = _quick(library, route="subcutaneous", store=[5, -1, -40]).brief
+    brief = quick_brief(library, route="subcutaneous", store=[5, -1, -40]).brief
     assert [row.state for row in brief.storage[:3]] == [None, None, None]
     assert brief.liquid_storage_temperatures_c == (5.0,)
     assert brief.frozen_storage_temperatures_c == (-40.0, -1.0)
@@ -373,17 +368,17 @@ def test_open_states_follow_the_first_ice(library: Library) -> None:
 
 
 def test_dried_product(library: Library) -> None:
-    completed = _quick(library, route="intravenous", form="dried", store=[5, -20])
+    completed = quick_brief(library, route="intravenous", form="dried", store=[5, -20])
     brief = completed.brief
     assert brief.dried_storage_temperatures_c == (-20.0, 5.0)
     assert brief.liquid_storage_temperatures_c == ()
     assert brief.temperatures_c("liquid", "use") == (25.0,)
     assert brief.is_dried
     assert not brief.is_frozen
-    assert _assumed(completed)["storage.state"] == "dried"
+    assert assumed_values(completed)["storage.state"] == "dried"
 
 
 def test_frozen_product_with_liquid_storage_only(library: Library) -> None:
-    brief = _quick(library, route="intravenous", form="frozen", store=[5]).brief
+    brief = quick_brief(library, route="intravenous", form="frozen", store=[5]).brief
     assert brief.frozen_storage_temperatures_c == (-20.0,)
     assert brief.liquid_storage_temperatures_c == (5.0,)

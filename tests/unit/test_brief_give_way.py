@@ -2,40 +2,27 @@
 
 from __future__ import annotations
 
-from typing import Any
-
 import pytest
+from brief_support import (
+    DRIED,
+    HEAD,
+    WITHOUT_SUCROSE,
+    assumed_values,
+    completed_text,
+    quick_brief,
+)
 
 from formbuf import shortlist
 from formbuf.errors import InputError
 from formbuf.library import Library, load_library
 from formbuf.product.brief import (
-    Completed,
-    brief_from_options,
     brief_from_text,
-    complete,
 )
-
-HEAD = '[product]\nroute = "subcutaneous"\n[ph]\ntarget = 6.0\n'
-DRIED = HEAD.replace('"\n[ph]', '"\nform = "dried"\n[ph]')
-WITHOUT_SUCROSE = 'exclude = ["sucrose"]\n' + HEAD + '[drug]\nkind = "antibody"\n'
 
 
 @pytest.fixture(scope="module")
 def library() -> Library:
     return load_library()
-
-
-def _complete(text: str, library: Library) -> Completed:
-    return complete(brief_from_text(text), library)
-
-
-def _quick(library: Library, **options: Any) -> Completed:
-    return complete(brief_from_options(**({"ph": 6.0} | options)), library)
-
-
-def _assumed(completed: Completed) -> dict[str, Any]:
-    return {row.key: row.value for row in completed.assumptions}
 
 
 @pytest.mark.parametrize(
@@ -50,7 +37,7 @@ def _assumed(completed: Completed) -> dict[str, Any]:
 def test_an_excluded_agent_gives_way_and_the_assumption_says_to_what(
     text: str, agent: str, said: str, library: Library
 ) -> None:
-    completed = _complete(text, library)
+    completed = completed_text(text, library)
     row = next(a for a in completed.assumptions if a.key == "tonicity.agent")
     assert completed.brief.tonicity.agent == row.value == agent
     assert completed.brief.tonicity.agent_is_default
@@ -60,15 +47,15 @@ def test_an_excluded_agent_gives_way_and_the_assumption_says_to_what(
 
 def test_without_any_agent_left_nothing_fills(library: Library) -> None:
     text = 'exclude = ["sodium", "mannitol"]\n' + HEAD
-    completed = _complete(text, library)
+    completed = completed_text(text, library)
     assert completed.brief.tonicity.agent is None
     assert not completed.brief.tonicity.fill
-    assert _assumed(completed)["tonicity.fill"] is False
+    assert assumed_values(completed)["tonicity.fill"] is False
     keys = [row.key for row in completed.assumptions]
     assert keys.count("tonicity.fill") == 1
     with pytest.raises(InputError, match="excludes every customary agent"):
-        _complete(text + "[tonicity]\nfill = true\n", library)
-    own = _complete(text + '[tonicity]\nagent = "glycerol"\n', library).brief
+        completed_text(text + "[tonicity]\nfill = true\n", library)
+    own = completed_text(text + '[tonicity]\nagent = "glycerol"\n', library).brief
     assert own.tonicity.agent == "glycerol"
     assert own.tonicity.fill
 
@@ -79,7 +66,7 @@ def test_an_assumed_dose_says_whether_it_is_the_largest(library: Library) -> Non
         ("intramuscular", "largest usual volume of the route, conservative"),
         ("ophthalmic_topical", "typical volume of the route"),
     ):
-        rows = {a.key: a for a in _quick(library, route=route).assumptions}
+        rows = {a.key: a for a in quick_brief(library, route=route).assumptions}
         assert rows["dose.volume_ml"].reason.startswith(words)
         fill = rows["container.fill_volume_ml"].reason
         assert ("meets more glass" in fill) == (route != "ophthalmic_topical")
@@ -100,4 +87,4 @@ def test_an_excluded_material_screens_the_buffer_made_of_it(library: Library) ->
 
 def test_an_unknown_name_is_still_refused(library: Library) -> None:
     with pytest.raises(InputError, match="unknown species, system, ion or material"):
-        _complete('exclude = ["sucros"]\n' + HEAD, library)
+        completed_text('exclude = ["sucros"]\n' + HEAD, library)
